@@ -1,0 +1,213 @@
+"""Delimited peak lists: one peak a row, with or without a row of column names, decimal point or comma."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator, Sequence
+from typing import NamedTuple
+
+import numpy as np
+
+from branchpos.errors import FormatError, InputError, SpectrumError
+from branchpos.reading.assembly import MOST_ROWS, Details, PeakRow, assemble
+from branchpos.reading.ionisation import ionisation_warnings
+from branchpos.reading.numerals import is_numeric, parse_number, quoted
+from branchpos.spectrum import FloatArray, Spectrum
+
+_DELIMITERS = (("semicolon", r"\s*;\s*"), ("tab", r" *\t *"), ("comma", r"\s*,\s*"), ("blank", r"\s+"))
+_MZ_NAMES = frozenset(
+    {"mz", "moverz", "mass", "masses", "massu", "massda", "amu", "mass2charge", "masstocharge"}
+)
+_INTENSITY_NAMES = frozenset(
+    {"intensity", "intensities", "intens", "int", "i", "relativeintensity", "relintensity", "relint"}
+    | {"abundance", "abundances", "abund", "relativeabundance", "relabundance", "height", "area"}
+    | {"count", "counts", "signal", "response", "current", "ioncurrent"}
+)
+_COMMENT = "#"
+_SAMPLE = 20
+_FEW_ROWS = 5
+_PROFILE_ROWS = 10
+_WIDEST_PROFILE_STEP = 0.95
+"""Peaks lie about one unit apart; evenly spaced points closer than that are a profile or a time axis."""
+
+
+class _Layout(NamedTuple):
+    """How the rows are cut, and which cell is what."""
+
+    delimiter: str
+    decimal_comma: bool
+    mz: int
+    intensity: int
+    header: tuple[str, ...]
+
+    def cells(self, line: str) -> list[str]:
+        return re.split(self.delimiter, _stripped(line))
+
+    def number(self, cell: str) -> str:
+        return cell.replace(",", ".") if self.decimal_comma else cell
+
+
+def looks_like(lines: Sequence[str]) -> bool:
+    """Tell from the head of a file whether rows of two or more numbers follow at most one row of names."""
+    rows = [line for line in lines if not _is_remark(line)][: _SAMPLE + 1]
+    return any(_delimiter_of(rows[skipped:]) is not None for skipped in (0, 1) if rows[skipped:])
+
+
+def read_lines(lines: Sequence[str]) -> Iterator[Spectrum | InputError]:
+    """Yield the one spectrum of a peak list, or what is wrong with it."""
+    try:
+        remarks = [
+            line.strip().lstrip(_COMMENT).strip() for line in lines if line.lstrip().startswith(_COMMENT)
+        ]
+        rows, layout = _read_rows(lines)
+        mz = np.array([row.mz for row in rows])
+        if not layout.header:
+            _check_unnamed(mz, np.array([row.intensity for row in rows]), rows[0].line, layout)
+        _check_spacing(mz, rows[0].line)
+        metadata = {"remarks": "; ".join(remarks)} if remarks else {}
+        notes = [note for remark in remarks for note in ionisation_warnings(instrument=remark)]
+        yield assemble(rows, Details(metadata=metadata, notes=notes))
+    except InputError as fault:
+        yield fault
+
+
+def names_mz(cell: str) -> bool:
+    """Tell whether a column name means m/z.
+
+    >>> names_mz("m/z"), names_mz("Mass (u)"), names_mz("time")
+    (True, True, False)
+    """
+    return _plain(cell) in _MZ_NAMES
+
+
+def names_intensity(cell: str) -> bool:
+    """Tell whether a column name means intensity.
+
+    >>> names_intensity("Rel. Int."), names_intensity("m/z")
+    (True, False)
+    """
+    return _plain(cell) in _INTENSITY_NAMES
+
+
+def _plain(cell: str) -> str:
+    words = (
+        re.sub(r"\[.*?\]|\(.*?\)|%", "", cell.lower()) if not cell.lower().startswith("(") else cell.lower()
+    )
+    return re.sub(r"[^a-z0-9]", "", words)
+
+
+def _stripped(line: str) -> str:
+    return line.strip(" \r\n\f\v").replace('"', "")
+
+
+def _is_remark(line: str) -> bool:
+    return not line.strip() or line.lstrip().startswith(_COMMENT)
+
+
+def _numeric_with_comma(cell: str) -> bool:
+    return is_numeric(cell.replace(",", ".", 1))
+
+
+def _delimiter_of(rows: Sequence[str]) -> tuple[str, str] | None:
+    """Return the delimiter that cuts the first of some rows into two or more numbers.
+
+    Each row but the last may have its say, since one bad row must not hide the format; the majority decides.
+    """
+    sample = rows[:_SAMPLE]
+    for name, pattern in _DELIMITERS:
+        test = is_numeric if name == "comma" else _numeric_with_comma
+        cut = [re.split(pattern, _stripped(row), maxsplit=20) for row in sample]
+        good = sum(sum(map(test, cells)) >= 2 for cells in cut)
+        if good and 2 * good >= len(sample):
+            return name, pattern
+    return None
+
+
+def _read_rows(lines: Sequence[str]) -> tuple[list[PeakRow], _Layout]:
+    layout: _Layout | None = None
+    rows: list[PeakRow] = []
+    for number, line in enumerate(lines, start=1):
+        if _is_remark(line):
+            continue
+        if layout is None:
+            layout = _find_layout(lines, number)
+            if layout.header:
+                continue
+        rows.append(_row(layout, line, number))
+        if len(rows) > MOST_ROWS:
+            break
+    if layout is None or not rows:
+        raise SpectrumError("no row of numbers", remedy="give one m/z and one intensity a row")
+    return rows, layout
+
+
+def _find_layout(lines: Sequence[str], number: int) -> _Layout:
+    sample = [line for line in lines[number - 1 : number + 4 * _SAMPLE] if not _is_remark(line)]
+    first_is_data = sum(map(_numeric_with_comma, re.split(r"[;\t\s]+|,\s*", _stripped(sample[0])))) >= 2
+    data = sample if first_is_data else sample[1:]
+    found = _delimiter_of(data)
+    if found is None:
+        raise FormatError(
+            f"no delimiter cuts {quoted(sample[0].strip())} and the rows below into numbers",
+            place=f"line {number}",
+            remedy="use comma, semicolon, tab or blanks between m/z and intensity",
+        )
+    name, pattern = found
+    decimal_comma = name != "comma" and any("," in row for row in data)
+    if first_is_data:
+        return _Layout(pattern, decimal_comma, 0, 1, ())
+    header = re.split(pattern, _stripped(sample[0]))
+    return _named_layout(header, pattern, decimal_comma, number)
+
+
+def _named_layout(header: list[str], pattern: str, decimal_comma: bool, number: int) -> _Layout:
+    positions = []
+    for what, names in (("m/z", names_mz), ("intensity", names_intensity)):
+        at = [index for index, cell in enumerate(header) if names(cell)]
+        if not at:
+            raise FormatError(
+                f"no column is named {what} among {quoted(', '.join(header))}",
+                place=f"line {number}",
+                remedy="name the columns m/z and intensity",
+            )
+        positions.append(at[0])
+    return _Layout(pattern, decimal_comma, positions[0], positions[1], tuple(header))
+
+
+def _row(layout: _Layout, line: str, number: int) -> PeakRow:
+    cells = layout.cells(line)
+    if len(cells) <= max(layout.mz, layout.intensity):
+        raise FormatError(
+            f"{quoted(line.strip())} has no {'intensity' if layout.intensity >= len(cells) else 'm/z'}",
+            place=f"line {number}",
+            remedy="give one m/z and one intensity a row",
+        )
+    mz, height = (layout.number(cells[at]) for at in (layout.mz, layout.intensity))
+    return PeakRow(number, parse_number(mz, "m/z", number), parse_number(height, "intensity", number))
+
+
+def _check_unnamed(mz: FloatArray, intensity: FloatArray, line: int, layout: _Layout) -> None:
+    """Refuse columns that, without names, do not look like m/z and then intensity."""
+    if mz.size < _FEW_ROWS:
+        return
+    if np.array_equal(mz, np.arange(1, mz.size + 1)):
+        problem = f"the first column counts from 1 to {mz.size}: row numbers, not m/z"
+    elif (np.diff(intensity) > 0).all() and not (np.diff(mz) > 0).all():
+        problem = "the second column rises from row to row as m/z does, the first does not"
+    else:
+        return
+    raise SpectrumError(
+        problem, place=f"line {line}", remedy="put m/z first, or name the columns in a first row"
+    )
+
+
+def _check_spacing(mz: FloatArray, line: int) -> None:
+    steps = np.diff(mz)
+    if mz.size < _PROFILE_ROWS or not np.isfinite(steps).all():
+        return
+    if 0 < steps.max() < _WIDEST_PROFILE_STEP and np.ptp(steps) <= 0.05 * steps.max():
+        raise SpectrumError(
+            f"the m/z column rises evenly by about {steps.mean():.3g}: a profile or a time axis, not peaks",
+            place=f"line {line}",
+            remedy="give centroided peaks, with m/z in the first column or in a column of that name",
+        )
