@@ -225,5 +225,5 @@ def _remedy(plain: str) -> str:
 def _unbranched() -> dict[str, str]:
     """Return the name of every unbranched chain by what ``_plain`` makes of it."""
     groups = [END_GROUPS[name] for name in _PATTERNS]
-    chains = [Chain(n, (), group) for group in groups for n in range(3, LONGEST_NAMED + 1)]
+    chains = [Chain(n, (), group) for group in groups for n in range(3, LONGEST_NAMED)]
     return {_plain(systematic_name(chain)): systematic_name(chain) for chain in chains}
