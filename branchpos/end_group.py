@@ -32,7 +32,7 @@ _CLASSES = (
     EndGroup("methyl ether", Formula(c=1, h=2, o=1)),
     EndGroup("amine", Formula(h=1, n=1)),
     EndGroup("aldehyde", Formula(h=-2, o=1)),
-    EndGroup("methyl ketone", Formula(h=-2, o=1), first_free=3),
+    EndGroup("methyl ketone", Formula(c=1, o=1)),
     EndGroup("acid", Formula(h=-2, o=2)),
     EndGroup("methyl ester", Formula(c=1, o=2)),
     EndGroup("ethyl ester", Formula(c=2, h=2, o=2)),

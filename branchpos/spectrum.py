@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
+from math import inf
 from types import MappingProxyType
 
 import numpy as np
@@ -31,7 +32,8 @@ class Spectrum:
     doubtful : shape (peaks,); true where the file itself casts doubt on the intensity, which may be a
         tenth of what was measured (a shifted decimal).
     threshold : smallest intensity that the recording kept, same unit as ``intensity``.
-    first_mass, last_mass : recorded mass range [Th]; outside it, absence says nothing.
+    first_mass, last_mass : recorded mass range [Th]; outside it, absence says nothing. Without word of
+        the range it runs from the first peak upwards without end.
     accurate : true when m/z carries at least three decimals.
     title, source : the record's own title; the path as the user gave it, with the block inside it.
     metadata : every other field of the record, as text.
@@ -70,7 +72,7 @@ class Spectrum:
     ) -> Spectrum:
         """Check and order peaks; drop zero intensities and sum rows of equal m/z, with a warning each.
 
-        The threshold defaults to the smallest intensity present; the mass range to that of the peaks.
+        The threshold defaults to the smallest intensity present; the mass range begins at the first peak.
 
         Raises
         ------
@@ -100,7 +102,7 @@ class Spectrum:
             doubtful=np.bincount(group, weights=flags) > 0,
             threshold=float(summed.min() if threshold is None else threshold),
             first_mass=float(unique[0] if first_mass is None else first_mass),
-            last_mass=float(unique[-1] if last_mass is None else last_mass),
+            last_mass=inf if last_mass is None else float(last_mass),
             accurate=_needs_decimals(unique),
             title=title,
             source=source,

@@ -1,0 +1,1 @@
+"""From a spectrum as recorded to intensities on whole mass numbers."""

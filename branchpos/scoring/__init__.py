@@ -1,0 +1,1 @@
+"""Likelihood of spectra and retention indices under each hypothesis."""

@@ -1,0 +1,1 @@
+"""The stages in order: each command of the program as a call on values."""
