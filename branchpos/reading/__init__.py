@@ -3,12 +3,13 @@
 from __future__ import annotations
 
 from dataclasses import replace
+from itertools import islice
 from pathlib import Path
 
 from branchpos.errors import InputError, SpectrumError, TruncatedError
 from branchpos.reading.formats import recognise
 from branchpos.reading.numerals import counted, quoted
-from branchpos.reading.outcome import Reading
+from branchpos.reading.outcome import MOST_BLOCKS, Reading, too_many_blocks
 from branchpos.reading.text_source import SourceText, load_text
 from branchpos.spectrum import Spectrum
 
@@ -25,8 +26,10 @@ def read_file(path: str | Path) -> Reading:
     """
     source = load_text(path)
     form = recognise(source)
-    found = list(form.read_lines(source.lines))
+    found = list(islice(form.read_lines(source.lines), MOST_BLOCKS + 1))
     faults = _cut_short(source, found, form.has_end_mark) if source.cut else []
+    if len(found) > MOST_BLOCKS:
+        found[MOST_BLOCKS:] = [too_many_blocks()]
     total = len(found)
     spectra = tuple(_with_source(item, source.file, total) for item in found if isinstance(item, Spectrum))
     faults = [*(item.located(file=source.file) for item in found if isinstance(item, InputError)), *faults]

@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterator, Sequence
+from itertools import islice
 from typing import NamedTuple
 
 from branchpos.errors import FormatError, InputError, TruncatedError
@@ -14,6 +15,7 @@ from branchpos.reading.assembly import MOST_ROWS, Details, PeakRow, assemble
 from branchpos.reading.ionisation import ionisation_warnings
 from branchpos.reading.jcamp_blocks import Block, Entry, split_blocks
 from branchpos.reading.numerals import counted, is_numeric, leading_number, parse_number, quoted
+from branchpos.reading.outcome import MOST_BLOCKS, too_many_blocks
 from branchpos.spectrum import Spectrum
 
 _TABLES = ("PEAKTABLE", "XYPOINTS", "XYDATA", "DATATABLE")
@@ -50,28 +52,36 @@ def read_lines(lines: Sequence[str]) -> Iterator[Spectrum | InputError]:
 
     Blocks of other kinds (a structure, an infrared spectrum) are named in a warning on every spectrum.
     """
-    found: list[Spectrum | InputError] = []
-    others: list[str] = []
-    for block in split_blocks(lines):
-        kind = block.value("DATATYPE", "JCAMPCS")
-        if block.is_compound:
-            found += _check_compound(block)
-        elif "MASS" in kind.upper() or (not kind and not block.value("JCAMPCS")):
-            found += _read_block(block)
-        else:
-            others.append(f"line {block.first_line}: {kind[:40]}")
-    if others and not found:
-        yield FormatError(
-            f"no block is a mass spectrum ({'; '.join(others[:3])})",
-            remedy="give a block of DATA TYPE MASS SPECTRUM",
-        )
-    note = (
-        [f"{counted(len(others), 'block')} of another kind left out ({'; '.join(others[:3])})"]
-        if others
-        else []
-    )
-    for item in found:
-        yield item.with_warning(*note) if isinstance(item, Spectrum) else item
+    blocks = list(islice(split_blocks(lines), MOST_BLOCKS + 1))
+    others = [block for block in blocks if not block.is_compound and not _is_mass_spectrum(block)]
+    named = "; ".join(f"line {block.first_line}: {_kind(block)[:40]}" for block in others[:3])
+    notes = [f"{counted(len(others), 'block')} of another kind left out ({named})"] if others else []
+    found = False
+    for block in blocks[:MOST_BLOCKS]:
+        for item in _items(block):
+            found = True
+            yield item.with_warning(*notes) if isinstance(item, Spectrum) else item
+    if len(blocks) > MOST_BLOCKS:
+        yield too_many_blocks()
+    elif not found:
+        problem = f"no block is a mass spectrum ({named})" if named else "no block holds a spectrum"
+        yield FormatError(problem, remedy="give a block of DATA TYPE MASS SPECTRUM")
+
+
+def _items(block: Block) -> Iterator[Spectrum | InputError]:
+    if block.is_compound:
+        yield from _check_compound(block)
+    elif _is_mass_spectrum(block):
+        yield from _read_block(block)
+
+
+def _kind(block: Block) -> str:
+    return block.value("DATATYPE") or ("structure" if block.value("JCAMPCS") else "")
+
+
+def _is_mass_spectrum(block: Block) -> bool:
+    """Take a block that names no kind for a mass spectrum: what is wrong with it will show."""
+    return "MASS" in _kind(block).upper() or not _kind(block)
 
 
 def _check_compound(block: Block) -> Iterator[InputError]:

@@ -13,7 +13,7 @@ from branchpos.reading.numerals import counted, is_number, is_numeric, leading_n
 from branchpos.reading.peak_list import names_intensity, names_mz
 from branchpos.spectrum import Spectrum
 
-_KEY = re.compile(r"\s*#*\s*([A-Za-z][A-Za-z0-9 _./%()-]{0,59}?)\s*[:=]\s*(.*)", re.DOTALL)
+_KEY = re.compile(r"[\s#]*([A-Za-z][A-Za-z0-9 _./%()-]{0,59}?)\s{0,9}[:=](.*)", re.DOTALL)
 _TITLES = ("name", "title", "compound", "compoundname", "spectrum", "id")
 _PEAKS = ("peaks", "peaklist", "peakdata", "massspectrum", "spectrumpeaks", "mzintensity")
 _COUNTS = ("numpeaks", "numberofpeaks", "npeaks", "peakcount", "numpeak", "nopeaks", "noofpeaks")
@@ -61,10 +61,12 @@ def _holds_peaks(key_line: re.Match[str]) -> bool:
 
 def read_lines(lines: Sequence[str]) -> Iterator[Spectrum | InputError]:
     """Yield each spectrum, or what is wrong with it."""
-    drafts = list(_drafts(lines))
-    for draft in drafts:
+    drafts = _drafts(lines)
+    following = next(drafts, None)
+    while following is not None:
+        draft, following = following, next(drafts, None)
         try:
-            yield _spectrum(draft, is_last=draft is drafts[-1])
+            yield _spectrum(draft, is_last=following is None)
         except InputError as fault:
             yield fault.located(place=draft.place)
 

@@ -4,8 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
-from branchpos.errors import InputError
+from branchpos.errors import FormatError, InputError
 from branchpos.spectrum import Spectrum
+
+MOST_BLOCKS = 20_000
+"""Blocks that are read of one file; it bounds time (some seconds) and memory."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -20,3 +23,12 @@ class Reading:
 
     spectra: tuple[Spectrum, ...]
     faults: tuple[InputError, ...] = ()
+
+
+def too_many_blocks() -> FormatError:
+    """Return the fault that stands for all blocks beyond ``MOST_BLOCKS``."""
+    return FormatError(
+        f"the file holds more than {MOST_BLOCKS} blocks; the rest was not read",
+        place=f"block {MOST_BLOCKS + 1}",
+        remedy="split the file",
+    )

@@ -14,7 +14,8 @@ from branchpos.reading.ionisation import ionisation_warnings
 from branchpos.reading.numerals import is_numeric, parse_number, quoted
 from branchpos.spectrum import FloatArray, Spectrum
 
-_DELIMITERS = (("semicolon", r"\s*;\s*"), ("tab", r" *\t *"), ("comma", r"\s*,\s*"), ("blank", r"\s+"))
+_DELIMITERS = (";", "\t", ",", None)
+"""Tried in this order; ``None`` stands for any run of blanks."""
 _MZ_NAMES = frozenset(
     {"mz", "moverz", "mass", "masses", "massu", "massda", "amu", "mass2charge", "masstocharge"}
 )
@@ -34,14 +35,14 @@ _WIDEST_PROFILE_STEP = 0.95
 class _Layout(NamedTuple):
     """How the rows are cut, and which cell is what."""
 
-    delimiter: str
+    delimiter: str | None
     decimal_comma: bool
     mz: int
     intensity: int
     header: tuple[str, ...]
 
     def cells(self, line: str) -> list[str]:
-        return re.split(self.delimiter, _stripped(line))
+        return _cut(line, self.delimiter)
 
     def number(self, cell: str) -> str:
         return cell.replace(",", ".") if self.decimal_comma else cell
@@ -50,20 +51,18 @@ class _Layout(NamedTuple):
 def looks_like(lines: Sequence[str]) -> bool:
     """Tell from the head of a file whether rows of two or more numbers follow at most one row of names."""
     rows = [line for line in lines if not _is_remark(line)][: _SAMPLE + 1]
-    return any(_delimiter_of(rows[skipped:]) is not None for skipped in (0, 1) if rows[skipped:])
+    return any(_fitting_delimiters(rows[skipped:]) for skipped in (0, 1))
 
 
 def read_lines(lines: Sequence[str]) -> Iterator[Spectrum | InputError]:
     """Yield the one spectrum of a peak list, or what is wrong with it."""
     try:
-        remarks = [
-            line.strip().lstrip(_COMMENT).strip() for line in lines if line.lstrip().startswith(_COMMENT)
-        ]
         rows, layout = _read_rows(lines)
         mz = np.array([row.mz for row in rows])
         if not layout.header:
-            _check_unnamed(mz, np.array([row.intensity for row in rows]), rows[0].line, layout)
+            _check_unnamed(mz, np.array([row.intensity for row in rows]), rows[0].line)
         _check_spacing(mz, rows[0].line)
+        remarks = [line.strip(" \t#") for line in lines if line.lstrip().startswith(_COMMENT)]
         metadata = {"remarks": "; ".join(remarks)} if remarks else {}
         notes = [note for remark in remarks for note in ionisation_warnings(instrument=remark)]
         yield assemble(rows, Details(metadata=metadata, notes=notes))
@@ -96,8 +95,8 @@ def _plain(cell: str) -> str:
     return re.sub(r"[^a-z0-9]", "", words)
 
 
-def _stripped(line: str) -> str:
-    return line.strip(" \r\n\f\v").replace('"', "")
+def _cut(line: str, delimiter: str | None) -> list[str]:
+    return [cell.strip() for cell in line.strip(" ").replace('"', "").split(delimiter)]
 
 
 def _is_remark(line: str) -> bool:
@@ -108,19 +107,18 @@ def _numeric_with_comma(cell: str) -> bool:
     return is_numeric(cell.replace(",", ".", 1))
 
 
-def _delimiter_of(rows: Sequence[str]) -> tuple[str, str] | None:
-    """Return the delimiter that cuts the first of some rows into two or more numbers.
+def _fitting_delimiters(rows: Sequence[str]) -> list[str | None]:
+    """Return the delimiters that cut at least half of the first rows into two or more numbers.
 
-    Each row but the last may have its say, since one bad row must not hide the format; the majority decides.
+    Half suffices, since one bad row must not hide the format.
     """
     sample = rows[:_SAMPLE]
-    for name, pattern in _DELIMITERS:
-        test = is_numeric if name == "comma" else _numeric_with_comma
-        cut = [re.split(pattern, _stripped(row), maxsplit=20) for row in sample]
-        good = sum(sum(map(test, cells)) >= 2 for cells in cut)
-        if good and 2 * good >= len(sample):
-            return name, pattern
-    return None
+    return [mark for mark in _DELIMITERS if 2 * _rows_cut_by(mark, sample) >= max(len(sample), 1)]
+
+
+def _rows_cut_by(delimiter: str | None, rows: Sequence[str]) -> int:
+    test = is_numeric if delimiter == "," else _numeric_with_comma
+    return sum(sum(map(test, _cut(row, delimiter)[:20])) >= 2 for row in rows)
 
 
 def _read_rows(lines: Sequence[str]) -> tuple[list[PeakRow], _Layout]:
@@ -142,25 +140,25 @@ def _read_rows(lines: Sequence[str]) -> tuple[list[PeakRow], _Layout]:
 
 
 def _find_layout(lines: Sequence[str], number: int) -> _Layout:
+    """Tell the layout from the first row that is no remark, at line ``number``, and some rows below it."""
     sample = [line for line in lines[number - 1 : number + 4 * _SAMPLE] if not _is_remark(line)]
-    first_is_data = sum(map(_numeric_with_comma, re.split(r"[;\t\s]+|,\s*", _stripped(sample[0])))) >= 2
-    data = sample if first_is_data else sample[1:]
-    found = _delimiter_of(data)
-    if found is None:
+    named = not any(_rows_cut_by(mark, sample[:1]) for mark in _DELIMITERS)
+    data = sample[1:] if named else sample
+    fitting = _fitting_delimiters(data)
+    if not fitting:
         raise FormatError(
             f"no delimiter cuts {quoted(sample[0].strip())} and the rows below into numbers",
             place=f"line {number}",
             remedy="use comma, semicolon, tab or blanks between m/z and intensity",
         )
-    name, pattern = found
-    decimal_comma = name != "comma" and any("," in row for row in data)
-    if first_is_data:
-        return _Layout(pattern, decimal_comma, 0, 1, ())
-    header = re.split(pattern, _stripped(sample[0]))
-    return _named_layout(header, pattern, decimal_comma, number)
+    delimiter = fitting[0]
+    decimal_comma = delimiter != "," and any("," in row for row in data)
+    if named:
+        return _named_layout(_cut(sample[0], delimiter), delimiter, decimal_comma, number)
+    return _Layout(delimiter, decimal_comma, 0, 1, ())
 
 
-def _named_layout(header: list[str], pattern: str, decimal_comma: bool, number: int) -> _Layout:
+def _named_layout(header: list[str], delimiter: str | None, decimal_comma: bool, number: int) -> _Layout:
     positions = []
     for what, names in (("m/z", names_mz), ("intensity", names_intensity)):
         at = [index for index, cell in enumerate(header) if names(cell)]
@@ -171,7 +169,7 @@ def _named_layout(header: list[str], pattern: str, decimal_comma: bool, number: 
                 remedy="name the columns m/z and intensity",
             )
         positions.append(at[0])
-    return _Layout(pattern, decimal_comma, positions[0], positions[1], tuple(header))
+    return _Layout(delimiter, decimal_comma, positions[0], positions[1], tuple(header))
 
 
 def _row(layout: _Layout, line: str, number: int) -> PeakRow:
@@ -186,7 +184,7 @@ def _row(layout: _Layout, line: str, number: int) -> PeakRow:
     return PeakRow(number, parse_number(mz, "m/z", number), parse_number(height, "intensity", number))
 
 
-def _check_unnamed(mz: FloatArray, intensity: FloatArray, line: int, layout: _Layout) -> None:
+def _check_unnamed(mz: FloatArray, intensity: FloatArray, line: int) -> None:
     """Refuse columns that, without names, do not look like m/z and then intensity."""
     if mz.size < _FEW_ROWS:
         return

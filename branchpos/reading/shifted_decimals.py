@@ -2,7 +2,7 @@
 
 In series of records printed with one decimal, some values carry two. Nearly all of those are a tenth of what
 was measured: in MSBNK-Fac_Eng_Univ_Tokyo-JP007688 (tetradecane) m/z 43 reads 9.77, between 44.3 at m/z 41 and
-99.99 at m/z 57, and is 97.7. Beside other records of the same compounds (51 pairs of records, 352 such peaks),
+99.99 at m/z 57, and is 97.7. Beside other records of the same compounds (51 pairs, 352 such peaks),
 97 % lie below a third of the other record's value, the median at 0.08 of it; of the unmarked peaks under a
 tenth of the base peak 19 % do, median 0.8. In records with two decimals throughout, nothing is amiss (median
 1.05). Whether a given value slipped cannot be told from its record alone: the peak is marked, not altered.

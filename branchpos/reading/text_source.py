@@ -12,6 +12,9 @@ from branchpos.errors import FormatError, InputError
 LARGEST_FILE = 32_000_000
 """Bytes of text that are read at most; some 15,000 spectra. It bounds time and memory."""
 
+LONGEST_LINE = 200_000
+"""Characters of a line that are read at most; no spectrum needs longer ones. It bounds time."""
+
 _GZIP = b"\x1f\x8b"
 _BYTE_ORDER_MARKS = (
     (codecs.BOM_UTF8, "utf-8-sig"),
@@ -71,6 +74,7 @@ def load_text(path: str | Path) -> SourceText:
     except InputError as fault:
         raise fault.located(file=file) from None
     lines = text.replace("\r\n", "\n").replace("\r", "\n").split("\n")
+    _require_line_length(lines, file)
     return SourceText(file, lines[:-1] if cut else lines, cut)
 
 
@@ -94,6 +98,17 @@ def _require_size(data: bytes) -> None:
         )
     if not data.strip(b"\0 \t\r\n"):
         raise FormatError("the file holds nothing but blanks", remedy="export the spectrum again")
+
+
+def _require_line_length(lines: list[str], file: str) -> None:
+    longest = max(range(len(lines)), key=lambda at: len(lines[at]))
+    if len(lines[longest]) > LONGEST_LINE:
+        raise FormatError(
+            f"the line holds {len(lines[longest])} characters, more than the {LONGEST_LINE} that are read",
+            file=file,
+            place=f"line {longest + 1}",
+            remedy="break it into one peak a line",
+        )
 
 
 def _decompress(data: bytes) -> tuple[bytes, bool]:
