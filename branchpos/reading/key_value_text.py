@@ -114,7 +114,20 @@ def _cells(pair: str) -> list[str]:
     return [cell for cell in re.split(r"[\s,:]+", pair.strip(" \t()")) if cell]
 
 
+def _refuse_decimal_commas(draft: _Draft) -> None:
+    """Refuse ``57,07;100,5`` on every line: two pairs, or one pair with decimal commas."""
+    lines = [[part.strip() for part in text.split(";") if part.strip()] for _, text in draft.pairs]
+    joined = [parts for parts in lines if len(parts) > 1]
+    if joined and all(len(parts) == 2 for parts in joined) and "," in "".join(map("".join, joined)):
+        raise FormatError(
+            f"{quoted('; '.join(joined[0]))} may be two pairs, or one with decimal commas",
+            place=f"line {draft.pairs[0][0]}",
+            remedy="write decimal points, and a blank between m/z and intensity",
+        )
+
+
 def _spectrum(draft: _Draft, is_last: bool) -> Spectrum:
+    _refuse_decimal_commas(draft)
     rows: list[PeakRow] = []
     remarks = 0
     for line, text in draft.pairs:

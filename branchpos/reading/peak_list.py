@@ -44,8 +44,16 @@ class _Layout(NamedTuple):
     def cells(self, line: str) -> list[str]:
         return _cut(line, self.delimiter)
 
-    def number(self, cell: str) -> str:
-        return cell.replace(",", ".") if self.decimal_comma else cell
+    def number(self, cell: str, line: int) -> str:
+        if not self.decimal_comma:
+            return cell
+        if "." in cell:
+            raise FormatError(
+                f"{quoted(cell)} stands in a list with both a decimal comma and a decimal point",
+                place=f"line {line}",
+                remedy="use one of the two throughout",
+            )
+        return cell.replace(",", ".")
 
 
 def looks_like(lines: Sequence[str]) -> bool:
@@ -118,7 +126,14 @@ def _fitting_delimiters(rows: Sequence[str]) -> list[str | None]:
 
 def _rows_cut_by(delimiter: str | None, rows: Sequence[str]) -> int:
     test = is_numeric if delimiter == "," else _numeric_with_comma
-    return sum(sum(map(test, _cut(row, delimiter)[:20])) >= 2 for row in rows)
+    cut = [_cut(row, delimiter)[:20] for row in rows]
+    return sum(sum(map(test, cells)) >= 2 and not any(map(_holds_several, cells)) for cells in cut)
+
+
+def _holds_several(cell: str) -> bool:
+    """Tell whether a cell still holds several numbers: ``07 100`` of ``57,07 100,5`` cut at commas."""
+    parts = cell.split()
+    return len(parts) > 1 and all(map(_numeric_with_comma, parts))
 
 
 def _read_rows(lines: Sequence[str]) -> tuple[list[PeakRow], _Layout]:
@@ -155,7 +170,19 @@ def _find_layout(lines: Sequence[str], number: int) -> _Layout:
     decimal_comma = delimiter != "," and any("," in row for row in data)
     if named:
         return _named_layout(_cut(sample[0], delimiter), delimiter, decimal_comma, number)
+    if delimiter == "," and any(map(_may_hide_decimals, data)):
+        raise FormatError(
+            f"the commas of {quoted(data[0].strip())} may be decimal commas",
+            place=f"line {number}",
+            remedy="part the columns by semicolons or tabs, or name them in a first row",
+        )
     return _Layout(delimiter, decimal_comma, 0, 1, ())
+
+
+def _may_hide_decimals(row: str) -> bool:
+    """Tell whether a row cut at commas could be two numbers with decimal commas: ``57,07,100,5``."""
+    cells = _cut(row, ",")
+    return len(cells) > 2 and all(map(str.isdigit, cells)) and (len(cells) == 4 or cells[1][:1] == "0")
 
 
 def _named_layout(header: list[str], delimiter: str | None, decimal_comma: bool, number: int) -> _Layout:
@@ -180,7 +207,7 @@ def _row(layout: _Layout, line: str, number: int) -> PeakRow:
             place=f"line {number}",
             remedy="give one m/z and one intensity a row",
         )
-    mz, height = (layout.number(cells[at]) for at in (layout.mz, layout.intensity))
+    mz, height = (layout.number(cells[at], number) for at in (layout.mz, layout.intensity))
     return PeakRow(number, parse_number(mz, "m/z", number), parse_number(height, "intensity", number))
 
 
