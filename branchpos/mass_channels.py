@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
@@ -33,6 +33,10 @@ class MassChannels:
     first: int
     last: float
     omission: float
+
+    def with_omission(self, least: float) -> MassChannels:
+        """Return the channels with at least this chance of omission."""
+        return replace(self, omission=max(self.omission, least))
 
     @property
     def heaviest(self) -> int:

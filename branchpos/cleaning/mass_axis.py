@@ -55,7 +55,7 @@ def align_masses(mz: FloatArray, relative: FloatArray) -> IntArray:
     choice = [int(best.argmin())]
     for arrivals in reversed(came_from):
         choice.append(int(arrivals[choice[-1]]))
-    return options[np.arange(mz.size), choice[::-1]]
+    return np.asarray(options[np.arange(mz.size), choice[::-1]])
 
 
 def _own_costs(mz: FloatArray, relative: FloatArray, options: IntArray) -> FloatArray:

@@ -19,7 +19,7 @@ from branchpos.ion_series import IonKind, SeriesBatch
 from branchpos.masses import isotope_pattern, parse_formula
 from branchpos.predicting.cleavage import Cleavages, cleave
 from branchpos.predicting.parameters import YieldParameters
-from branchpos.predicting.yields import YieldTables, yield_tables
+from branchpos.predicting.yields import YieldTables, side_ions, yield_tables
 
 SMALLEST = 3
 """Smallest ion [carbons] that is predicted; below it every hydrocarbon gives much the same."""
@@ -62,7 +62,7 @@ def predict_alkanes(parameters: YieldParameters, backbone: int, positions: NDArr
         cleavages = cleave(backbone, positions[rows])
         abundance[rows], steered[rows], pool = _assemble(parameters, tables, cleavages, carbons)
         daughters += pool
-    side_sizes = np.flatnonzero(tables.side)
+    series, side_sizes = np.array(side_ions(carbons), dtype=np.intp).reshape(-1, 2).T
     return SeriesBatch(
         end_group=ALKANE,
         backbone=backbone,
@@ -72,8 +72,8 @@ def predict_alkanes(parameters: YieldParameters, backbone: int, positions: NDArr
         kinds=kinds,
         abundance=abundance,
         steered=steered,
-        side_masses=14 * side_sizes - 1,
-        side_abundance=(tables.side * daughters)[side_sizes] / max(len(positions), 1),
+        side_masses=14 * side_sizes - series,
+        side_abundance=tables.side * daughters[side_sizes] / max(len(positions), 1),
     )
 
 

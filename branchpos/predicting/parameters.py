@@ -23,8 +23,9 @@ POOL_SIZES = range(2, 9)
 """Sizes [carbons] of the low alkyl series with a weight of their own; larger ones decay from the last."""
 POOL_EVEN_SIZES = range(3, 9)
 """Sizes whose share of even-mass ions in the low series is a parameter of its own."""
-SIDE_SIZES = range(3, 12)
-"""Sizes of the ions one hydrogen below the even mass (41, 55, 69 ...) that all isomers show alike."""
+SIDE_SERIES = {1: range(3, 12), 2: range(3, 11), 3: range(3, 10)}
+"""Ions that all isomers show alike: hydrogens below the even mass (41, 55, 69 ...; 40, 54, 68 ...; 39, 53,
+67 ...) and the sizes that have a parameter."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -85,12 +86,14 @@ PARAMETERS = (
     Parameter("molecular_geminal", -2.0, 0.7, "its change for each quaternary carbon"),
     Parameter("molecular_size", 0.0, 0.05, "its change for each carbon beyond 20"),
     *_numbered(
-        "side",
-        SIDE_SIZES,
+        "side_1",
+        SIDE_SERIES[1],
         (-0.9, -1.3, -1.4, -1.5, -0.5, -0.8, -1.3, -2.0, -2.5),
         0.5,
         "ion of C{} two hydrogens below the daughter ion, relative to it",
     ),
+    *_numbered("side_2", SIDE_SERIES[2], (-4.0,) * 8, 1.0, "ion of C{} three hydrogens below, likewise"),
+    *_numbered("side_3", SIDE_SERIES[3], (-4.0,) * 7, 1.0, "ion of C{} four hydrogens below, likewise"),
 )
 """Every parameter, in the order of the vectors below."""
 

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from branchpos.predicting.cleavage import states
-from branchpos.predicting.parameters import POOL_EVEN_SIZES, POOL_SIZES, SIDE_SIZES
+from branchpos.predicting.parameters import POOL_EVEN_SIZES, POOL_SIZES, SIDE_SERIES
 
 _REFERENCE_SURVIVAL, _REFERENCE_DOUBLET = 10, 12
 """Sizes [carbons] at which survival and doublet ratio are quoted."""
@@ -29,8 +29,8 @@ class YieldTables:
     steered : the same where a branch sits on the ion's own end carbon, else 0.
     lost : what falls apart further, same shape.
     methyl_doublet, methyl_lost : the same for the loss of one single and one geminal methyl, shape (2,).
-    pool, pool_even, side : weights of daughter ions, their even shares, and the side series relative to the
-        odd daughter, shape (carbons + 2,).
+    pool, pool_even : weights of daughter ions and their even shares, shape (carbons + 2,).
+    side : abundance of the side ions relative to their odd daughters, shape (side ions,).
     """
 
     doublet: NDArray[np.complex64]
@@ -127,12 +127,13 @@ def _pool_even(named: Mapping[str, float], carbons: int) -> NDArray[np.float64]:
     return ratios
 
 
+def side_ions(carbons: int) -> list[tuple[int, int]]:
+    """Return (series, size) of the side ions that a chain of so many carbons can show."""
+    return [(series, size) for series, sizes in SIDE_SERIES.items() for size in sizes if size < carbons]
+
+
 def _side(named: Mapping[str, float], carbons: int) -> NDArray[np.float64]:
-    ratios = np.zeros(carbons + 2)
-    for size in SIDE_SIZES:
-        if size < carbons:
-            ratios[size] = np.exp(named[f"side_{size}"])
-    return ratios
+    return np.exp([named[f"side_{series}_{size}"] for series, size in side_ions(carbons)])
 
 
 def _logistic(values: NDArray[np.float64]) -> NDArray[np.float64]:

@@ -69,6 +69,26 @@ class ErrorModel:
         return np.array([self.tilt_sd, self.contrast_sd, self.doublet_sd])
 
 
+@dataclass(frozen=True, slots=True)
+class Quality:
+    """How well a spectrum was recorded, a thing to be inferred like any other.
+
+    Attributes
+    ----------
+    prior : probability before the spectrum is seen (judgement).
+    widening : factor on the error scales.
+    omission : least chance that the peak list leaves out a peak whatever its height.
+    """
+
+    prior: float
+    widening: float
+    omission: float
+
+
+SOUND = Quality(0.9, 1.0, 0.0)
+POOR = Quality(0.1, 2.0, 0.15)
+"""Peaks out of line or missing, for every hypothesis alike; ``SOUND`` is the usual case."""
+
 STARTING_ERRORS = ErrorModel((0.30, 0.35, 0.8), 0.5, 0.3, 0.4, 0.25)
 """Error scales before any fit (judgement)."""
 

@@ -22,8 +22,10 @@ IntArray = NDArray[np.intp]
 
 BLEED_MASSES = (73, 147, 207, 221, 281, 295, 355, 429)
 """Siloxane ions of column bleed (common practice); they speak for no hypothesis."""
-_IMPURITY_SHARE = 0.1
-"""Chance that an empty mass number shows a stray peak (judgement, as the next three)."""
+_SMALL = 0.005
+"""Relative height up to which a stray peak is noise and says nothing on how heavy it may get (judgement, as
+the next four)."""
+_LARGEST_IMPURITY_SHARE = 0.08
 _IMPURITY_FALL = 1.2
 _IMPURITY_FLOOR = -9.0
 _ISOTOPE_MARGIN = 1.5
@@ -62,10 +64,12 @@ def score_remainder(
     """
     masses = np.setdiff1d(recorded_masses(channels, heaviest), [*batch.masses.tolist(), *BLEED_MASSES])
     excess = unexplained(channels, masses)
-    by_mass = np.where(excess > 0, _impurity(excess, channels.threshold), np.log(1 - _IMPURITY_SHARE))
     side, places, members = np.intersect1d(masses, batch.side_masses, return_indices=True)
+    empty = np.setdiff1d(np.arange(masses.size), places)
+    by_mass = np.zeros(masses.size)
+    by_mass[empty] = _stray(excess[empty], channels.threshold)
     if side.size:
-        sizes = (side + 1) / 14
+        sizes = -(-side // 14)
         tilted = effects[0] + effects[1] * (sizes - TILT_PIVOT) / TILT_PIVOT
         expected = batch.side_abundance[members] * np.exp(tilted) + isotopes_below(channels, side)
         by_mass[places] = _side(channels, side, expected, errors.side_scale)
@@ -76,9 +80,7 @@ def score_no_chain(channels: MassChannels, heaviest: int) -> Remainder:
     """Score every recorded mass number under a compound that the program has no model for."""
     masses = np.setdiff1d(recorded_masses(channels, heaviest), BLEED_MASSES)
     excess = unexplained(channels, masses)
-    share = (np.count_nonzero(excess > 0) + 1) / (masses.size + 2)
-    height = -np.log(max(np.log(1 / channels.threshold), 1.0))
-    return Remainder(masses, np.where(excess > 0, np.log(share) + height, np.log(1 - share)))
+    return Remainder(masses, _anything(excess, channels.threshold))
 
 
 def recorded_masses(channels: MassChannels, heaviest: int) -> IntArray:
@@ -104,10 +106,42 @@ def isotopes_below(channels: MassChannels, masses: IntArray) -> FloatArray:
     )
 
 
-def _impurity(excess: FloatArray, threshold: float) -> FloatArray:
-    height = np.log(np.maximum(excess / threshold, 1.0))
-    charge = np.log(_IMPURITY_SHARE * _IMPURITY_FALL) - _IMPURITY_FALL * height
-    return np.asarray(np.maximum(charge, _IMPURITY_FLOOR))
+def _stray(excess: FloatArray, threshold: float) -> FloatArray:
+    """Score mass numbers that should be empty: noise at will, larger peaks few and falling with height."""
+    level = max(threshold, _SMALL)
+    small, large = _shares(excess, level)
+    large = min(large, _LARGEST_IMPURITY_SHARE)
+    fall = np.log(large * _IMPURITY_FALL) - _IMPURITY_FALL * np.log(np.maximum(excess / level, 1.0))
+    high = np.maximum(fall, _IMPURITY_FLOOR)
+    return _by_height(
+        excess, level, np.log(1 - small - large), np.log(small) - _width(threshold, level), high
+    )
+
+
+def _anything(excess: FloatArray, threshold: float) -> FloatArray:
+    """Score mass numbers where peaks of any height may stand."""
+    level = max(threshold, _SMALL)
+    small, large = _shares(excess, level)
+    high = np.full(excess.shape, np.log(large) - _width(level, 1.0))
+    return _by_height(
+        excess, level, np.log(1 - small - large), np.log(small) - _width(threshold, level), high
+    )
+
+
+def _shares(excess: FloatArray, level: float) -> tuple[float, float]:
+    """Return the shares of mass numbers with small and with large peaks, never quite none."""
+    count = excess.size + 2
+    large = int(np.count_nonzero(excess > level))
+    return (np.count_nonzero(excess) - large + 0.5) / count, (large + 0.5) / count
+
+
+def _width(low: float, high: float) -> float:
+    """Return the log of the log-range over which heights are spread evenly."""
+    return float(np.log(max(np.log(high / low), 0.5)))
+
+
+def _by_height(excess: FloatArray, level: float, empty: float, small: float, high: FloatArray) -> FloatArray:
+    return np.asarray(np.where(excess == 0, empty, np.where(excess <= level, small, high)))
 
 
 def _side(channels: MassChannels, masses: IntArray, expected: FloatArray, scale: float) -> FloatArray:

@@ -11,7 +11,13 @@ from numpy.typing import NDArray
 
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import ChannelView
-from branchpos.scoring.error_model import NOISE_OF_THRESHOLD, SHIFTED_SHARE, TEN, ErrorModel
+from branchpos.scoring.error_model import (
+    NOISE_OF_THRESHOLD,
+    SHIFTED_SHARE,
+    TEN,
+    ErrorModel,
+    log_density,
+)
 from branchpos.scoring.likelihood import TILT_PIVOT
 
 FloatTable = NDArray[np.float32]
@@ -58,6 +64,7 @@ class _Screen:
             np.float32
         )
         self.precision = errors.effect_sds[:2] ** -2.0
+        self.constant = np.float32((log_density(np.zeros(1))[0] - np.log(scale[seen])).sum())
 
     def score(self, abundance: FloatTable, steered: FloatTable) -> FloatTable:
         """Return the approximate log likelihood of each row."""
@@ -75,7 +82,7 @@ class _Screen:
         residual *= np.float32(0.25)
         np.log1p(residual, out=residual)
         penalty = 0.5 * (effects[:, 1:] ** 2 @ self.precision.astype(np.float32))
-        return np.asarray(np.float32(-2.5) * residual.sum(axis=1) - penalty, dtype=np.float32)
+        return np.asarray(self.constant - np.float32(2.5) * residual.sum(axis=1) - penalty, dtype=np.float32)
 
     def _effects(self, residual: FloatTable, steered: FloatTable) -> FloatTable:
         """Solve the ridge least squares for scale, tilt and contrast, shape (chains, 3)."""

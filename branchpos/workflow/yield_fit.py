@@ -16,7 +16,8 @@ from branchpos.cleaning.nominal import to_channels
 from branchpos.ion_series import IonKind, SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.predicting.alkanes import predict_alkanes
-from branchpos.predicting.parameters import PARAMETERS, SIDE_SIZES, YieldParameters, prior_parameters
+from branchpos.predicting.parameters import PARAMETERS, YieldParameters, prior_parameters
+from branchpos.predicting.yields import side_ions
 from branchpos.scoring.error_model import STARTING_ERRORS, ErrorModel
 from branchpos.scoring.likelihood import TILT_PIVOT, Linearised, linearise, log_expectation
 from branchpos.scoring.remainder import isotopes_below
@@ -25,11 +26,12 @@ from branchpos.workflow.reference_spectra import KnownSpectrum
 FloatArray = NDArray[np.float64]
 
 UNBRANCHED_WEIGHT = 0.35
-"""Weight of an unbranched record: many of them tell the same story, and they must not drown the few others."""
+"""Weight of an unbranched record: many of them tell one story and must not drown the few others."""
 _DIFFERENCE = 1e-3
 _LARGEST_STEP = 0.5
 _SCALE_PRIOR_STRENGTH = 20.0
 """How many ions the starting error scales count for."""
+_LEAST_TILT_SD = 0.3
 _SIDE_PRIOR_STRENGTH = 3.0
 
 
@@ -148,8 +150,9 @@ def _eliminated(slopes: FloatArray, view: Linearised) -> tuple[FloatArray, Float
 
 
 def _scales(records: Sequence[_Record], views: Sequence[Linearised], errors: ErrorModel) -> ErrorModel:
-    """Re-estimate the error scale of each ion kind from the weighted residuals."""
+    """Re-estimate the error scale of each ion kind, and how much instruments tilt."""
     squares = np.array(STARTING_ERRORS.scales) ** 2 * _SCALE_PRIOR_STRENGTH
+    tilts = np.array([view.effects[1] for view in views])
     counts = np.full(len(IonKind), _SCALE_PRIOR_STRENGTH)
     old = np.array(errors.scales)
     for record, view in zip(records, views, strict=True):
@@ -158,7 +161,8 @@ def _scales(records: Sequence[_Record], views: Sequence[Linearised], errors: Err
         squares += np.bincount(kinds, pulling * view.weight * old[kinds] ** 2 * view.residual**2, 3)
         counts += np.bincount(kinds, pulling, 3)
     fragment, rearranged, molecular = np.sqrt(squares / counts).tolist()
-    return replace(errors, scales=(fragment, rearranged, molecular))
+    tilt = float(np.sqrt((tilts**2).mean()))
+    return replace(errors, scales=(fragment, rearranged, molecular), tilt_sd=max(tilt, _LEAST_TILT_SD))
 
 
 def _with_side_ions(
@@ -167,13 +171,13 @@ def _with_side_ions(
     """Set the side ions to the robust middle of what the records show above their carbon-13 neighbours."""
     names = [parameter.name for parameter in PARAMETERS]
     values, variances = parameters.values.copy(), np.diag(parameters.covariance).copy()
-    found: dict[int, list[float]] = {size: [] for size in SIDE_SIZES}
+    found: dict[str, list[float]] = {name: [] for name in names if name.startswith("side_")}
     for record in records:
-        for size, ratio in _side_ratios(record, parameters, errors).items():
-            found[size].append(ratio)
-    for size, ratios in found.items():
-        index = names.index(f"side_{size}")
-        spread = 1.48 * float(np.median(np.abs(ratios - np.median(ratios)))) if ratios else 0.0
+        for name, ratio in _side_ratios(record, parameters, errors).items():
+            found[name].append(ratio)
+    for name, ratios in found.items():
+        index = names.index(name)
+        spread = 1.48 * float(np.median(np.abs(np.array(ratios) - np.median(ratios)))) if ratios else 0.0
         weight = len(ratios) / (len(ratios) + _SIDE_PRIOR_STRENGTH)
         middle = float(np.median(ratios)) if ratios else 0.0
         values[index] = (1 - weight) * PARAMETERS[index].mean + weight * middle
@@ -183,19 +187,19 @@ def _with_side_ions(
     return replace(parameters, values=values, covariance=covariance)
 
 
-def _side_ratios(record: _Record, parameters: YieldParameters, errors: ErrorModel) -> dict[int, float]:
-    """Return, by size, the log of observed side ion over the daughter ion it is predicted from."""
+def _side_ratios(record: _Record, parameters: YieldParameters, errors: ErrorModel) -> dict[str, float]:
+    """Return, by parameter, the log of an observed side ion over the daughter ion it is predicted from."""
     batch = record.predict(parameters)
     named = parameters.named()
     effects = linearise(record.channels.at(batch.masses), batch, errors).effects
     observed = record.channels.at(batch.side_masses)
     excess = observed.intensity - isotopes_below(record.channels, batch.side_masses)
+    usable = observed.seen & observed.recorded & ~observed.doubtful & (excess > 0)
     ratios = {}
-    for column, mass in enumerate(batch.side_masses):
-        size = (int(mass) + 1) // 14
-        usable = observed.seen[column] and observed.recorded[column] and not observed.doubtful[column]
-        if usable and excess[column] > 0:
+    for column, (series, size) in enumerate(side_ions(batch.skeleton_carbons)):
+        if usable[column]:
+            name = f"side_{series}_{size}"
             tilted = effects[0] + effects[1] * (size - TILT_PIVOT) / TILT_PIVOT
-            bare = np.log(batch.side_abundance[column]) - named[f"side_{size}"]
-            ratios[size] = float(np.log(excess[column]) - tilted - bare)
+            bare = np.log(batch.side_abundance[column]) - named[name]
+            ratios[name] = float(np.log(excess[column]) - tilted - bare)
     return ratios

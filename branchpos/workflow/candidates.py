@@ -1,0 +1,173 @@
+"""From a spectrum to the chains worth a full look: enumerate, predict, screen.
+
+Few methyls are tried at every number of carbons; more methyls only where few already explain the spectrum to
+within a wide margin of the best, since every chain contains simpler ones that explain part of it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator
+from dataclasses import dataclass, field
+from functools import lru_cache
+
+import numpy as np
+from numpy.typing import NDArray
+
+from branchpos.enumerating import alkane_positions, regular_isoprenoids
+from branchpos.enumerating.sizes import plausible_carbons
+from branchpos.ion_series import SeriesBatch
+from branchpos.mass_channels import MassChannels
+from branchpos.predicting.alkanes import predict_alkanes
+from branchpos.predicting.parameters import YieldParameters
+from branchpos.scoring.likelihood import fit_batch
+from branchpos.scoring.remainder import Remainder, score_remainder
+from branchpos.scoring.screening import screen_batch
+from branchpos.workflow.method import Method
+from branchpos.workflow.model import Model
+
+FloatArray = NDArray[np.float64]
+
+_MARGINS = {2: 40.0, 3: 25.0}
+"""Natural-log margin within which a number of carbons is looked at with 2, and with more methyls."""
+_FITTED_FOR_STANDING = 3
+_CACHED_ROWS = 4000
+_ISOPRENOID_FROM = 4
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Screened:
+    """Chains that share carbons and methyls, with their approximate log likelihoods.
+
+    Attributes
+    ----------
+    batch : expected ions.
+    scores : approximate log likelihood on the ions of the batch, shape (chains,).
+    is_family : true for a batch of isoprenoids that stands for all chains with so many methyls.
+    """
+
+    batch: SeriesBatch
+    scores: FloatArray
+    is_family: bool = False
+
+
+@dataclass(slots=True, eq=False)
+class SizeGroup:
+    """All that was tried at one number of carbons.
+
+    Attributes
+    ----------
+    carbons : carbons of the skeleton.
+    screened : batches by number of methyls.
+    remainder : log likelihood of the masses that no ion of the batches stands on.
+    standing : log likelihood of the best chain with the remainder.
+    best : that chain, as a batch of one.
+    """
+
+    carbons: int
+    screened: list[Screened] = field(default_factory=list)
+    remainder: Remainder | None = None
+    standing: float = -np.inf
+    best: SeriesBatch | None = None
+
+
+def choose_carbons(channels: MassChannels, method: Method) -> range:
+    """Return the numbers of carbons to look at: as asked, or as the spectrum allows."""
+    if method.formula is not None:
+        carbons = method.formula_carbons()
+        return range(carbons, carbons + 1)
+    return method.carbons if method.carbons is not None else plausible_carbons(channels)
+
+
+def screen_candidates(
+    channels: MassChannels, carbons: range, method: Method, model: Model
+) -> list[SizeGroup]:
+    """Screen every chain of the given carbons and of the method's methyls.
+
+    Returns
+    -------
+    one group a number of carbons; those that fell behind hold few methyls only.
+    """
+    groups = [SizeGroup(number) for number in carbons]
+    heaviest = heaviest_mass(carbons)
+    few = [k for k in method.methyls if k < min(_MARGINS)] or [method.methyls[0]]
+    _extend(groups, few, channels, heaviest, model)
+    for methyls in sorted(set(method.methyls) - set(few)):
+        margin = _MARGINS[min(methyls, max(_MARGINS))]
+        _extend(_leading(groups, margin), [methyls], channels, heaviest, model)
+    if method.methyls[0] <= 1 and method.methyls[-1] >= _ISOPRENOID_FROM:
+        for group in _leading(groups, _MARGINS[max(_MARGINS)]):
+            _add_isoprenoids(group, method, channels, heaviest, model)
+    return [group for group in groups if group.screened]
+
+
+def heaviest_mass(carbons: range) -> int:
+    """Return the last mass number that chains of these carbons speak of: M + 3 of the largest."""
+    return 14 * max(carbons) + 5
+
+
+def _leading(groups: list[SizeGroup], margin: float) -> list[SizeGroup]:
+    best = max(group.standing for group in groups)
+    return [group for group in groups if group.standing >= best - margin]
+
+
+def _extend(
+    groups: Iterable[SizeGroup], methyls: Iterable[int], channels: MassChannels, heaviest: int, model: Model
+) -> None:
+    for group in groups:
+        for count in methyls:
+            positions = alkane_positions(group.carbons - count, count)
+            if len(positions):
+                batch = _predicted(model.yields, group.carbons - count, count)
+                _add(group, batch, channels, heaviest, model)
+
+
+def _add_isoprenoids(
+    group: SizeGroup, method: Method, channels: MassChannels, heaviest: int, model: Model
+) -> None:
+    for backbone, positions in _isoprenoid_rows(group.carbons, method.methyls[-1]):
+        batch = predict_alkanes(model.yields, backbone, positions)
+        _add(group, batch, channels, heaviest, model, is_family=True)
+
+
+def _isoprenoid_rows(carbons: int, most_methyls: int) -> Iterator[tuple[int, NDArray[np.int16]]]:
+    """Yield the isoprenoids with more methyls than are enumerated in full, by backbone."""
+    by_backbone: dict[int, list[tuple[int, ...]]] = {}
+    for chain in regular_isoprenoids(carbons):
+        if len(chain.methyls) > most_methyls:
+            by_backbone.setdefault(chain.backbone, []).append(chain.methyls)
+    for backbone, rows in by_backbone.items():
+        yield backbone, np.array(rows, dtype=np.int16)
+
+
+def _add(
+    group: SizeGroup,
+    batch: SeriesBatch,
+    channels: MassChannels,
+    heaviest: int,
+    model: Model,
+    is_family: bool = False,
+) -> None:
+    """Screen a batch and let its best chains say where the whole size group stands."""
+    view = channels.at(batch.masses)
+    scores = screen_batch(view, batch, model.errors)
+    group.screened.append(Screened(batch, scores, is_family))
+    leading = batch.take(np.argsort(scores)[::-1][:_FITTED_FOR_STANDING])
+    fit = fit_batch(view, leading, model.errors)
+    top = int(fit.log_likelihood.argmax())
+    remainder = score_remainder(channels, batch, fit.effects[top], heaviest, model.errors)
+    standing = float(fit.log_likelihood[top]) + remainder.total
+    if standing > group.standing:
+        group.standing, group.remainder = standing, remainder
+        group.best = leading.take(np.array([top]))
+
+
+def _predicted(yields: YieldParameters, backbone: int, methyls: int) -> SeriesBatch:
+    """Predict all alkanes of a backbone; small batches are kept for the next spectrum."""
+    if len(positions := alkane_positions(backbone, methyls)) <= _CACHED_ROWS:
+        return _predicted_and_kept(yields, backbone, methyls)
+    return predict_alkanes(yields, backbone, positions)
+
+
+@lru_cache(maxsize=192)
+def _predicted_and_kept(yields: YieldParameters, backbone: int, methyls: int) -> SeriesBatch:
+    return predict_alkanes(yields, backbone, alkane_positions(backbone, methyls))

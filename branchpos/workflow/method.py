@@ -1,0 +1,161 @@
+"""The settings of an analysis, as options on the command line or as a method file in TOML."""
+
+from __future__ import annotations
+
+import tomllib
+from dataclasses import dataclass, fields, replace
+from pathlib import Path
+
+from branchpos.end_group import END_GROUPS
+from branchpos.enumerating import PRIORS
+from branchpos.errors import SettingsError
+from branchpos.masses import Formula, parse_formula
+
+ALL_CARBONS = range(5, 61)
+"""Carbons that may be asked for: smaller chains have no branch to place, larger ones were not checked."""
+MOST_METHYLS = 6
+_PLACED_CLASSES = ("alkane",)
+
+
+@dataclass(frozen=True, slots=True)
+class Method:
+    """Settings of ``locate``.
+
+    Attributes
+    ----------
+    chain : chain classes to consider, by name.
+    carbons : carbons of the skeleton to consider, branches included; None lets the spectrum say.
+    methyls : numbers of methyl branches to consider; isoprenoids with more are added when it begins at 0 or 1
+        and ends at 4 or more.
+    formula : molecular formula, if known; overrules ``carbons``.
+    prior : name of the prior, see ``branchpos.enumerating.priors``.
+    level : probability that the credible set has to reach.
+
+    Raises
+    ------
+    SettingsError : a value is out of range or unknown.
+    """
+
+    chain: tuple[str, ...] = ("alkane",)
+    carbons: range | None = None
+    methyls: range = range(5)
+    formula: str | None = None
+    prior: str = "flat"
+    level: float = 0.95
+
+    def __post_init__(self) -> None:
+        for name in self.chain:
+            _check_class(name)
+        if not self.chain:
+            raise SettingsError("no chain class", remedy=f"choose from {', '.join(_PLACED_CLASSES)}")
+        if self.prior not in PRIORS:
+            raise SettingsError(f"prior {self.prior!r}", remedy=f"choose from {', '.join(PRIORS)}")
+        if not 0.5 <= self.level < 1:
+            raise SettingsError(f"level {self.level:g}", remedy="give a probability from 0.5 to below 1")
+        _check_range("methyls", self.methyls, range(MOST_METHYLS + 1))
+        if self.carbons is not None:
+            _check_range("carbons", self.carbons, ALL_CARBONS)
+        if self.formula is not None:
+            self.formula_carbons()
+
+    def formula_carbons(self) -> int:
+        """Return the carbons that the formula leaves for an alkane.
+
+        Raises
+        ------
+        SettingsError : the formula is not one, or is not that of an alkane.
+        """
+        try:
+            formula = parse_formula(self.formula or "")
+        except ValueError as problem:
+            raise SettingsError(str(problem), remedy="write it like C27H56") from problem
+        if formula != Formula(formula.c, 2 * formula.c + 2) or formula.c not in ALL_CARBONS:
+            raise SettingsError(
+                f"formula {self.formula} is not an alkane of {ALL_CARBONS[0]} to {ALL_CARBONS[-1]} carbons",
+                remedy="leave --formula out, or check the chain class",
+            )
+        return formula.c
+
+
+def _check_class(name: str) -> None:
+    if name in _PLACED_CLASSES:
+        return
+    if name in END_GROUPS:
+        raise SettingsError(
+            f"chain class {name!r} cannot be placed yet", remedy=f"choose from {', '.join(_PLACED_CLASSES)}"
+        )
+    raise SettingsError(f"chain class {name!r} is unknown", remedy=f"choose from {', '.join(END_GROUPS)}")
+
+
+def _check_range(name: str, wanted: range, allowed: range) -> None:
+    if len(wanted) == 0 or wanted[0] not in allowed or wanted[-1] not in allowed:
+        span = f"{wanted.start}-{wanted.stop - 1}"
+        raise SettingsError(f"{name} {span}", remedy=f"give a range within {allowed[0]}-{allowed[-1]}")
+
+
+def parse_range(text: str, name: str) -> range:
+    """Read ``27`` or ``20-40`` as a range that includes both ends.
+
+    Raises
+    ------
+    SettingsError : the text is neither.
+
+    >>> parse_range("20-40", "carbons")
+    range(20, 41)
+    """
+    first, dash, last = text.strip().partition("-")
+    if not first.isdigit() or (dash and not last.isdigit()):
+        raise SettingsError(f"{name} {text!r}", remedy="write a number like 27 or a range like 20-40")
+    low, high = int(first), int(last or first)
+    if high < low:
+        raise SettingsError(f"{name} {text!r} runs backwards", remedy=f"write {high}-{low}")
+    return range(low, high + 1)
+
+
+def read_method(path: Path) -> Method:
+    """Read a method file: TOML with the fields of ``Method`` as keys.
+
+    Raises
+    ------
+    SettingsError : the file is missing, is no TOML, or holds an unknown key or a value out of range; the
+        message names the line.
+    """
+    try:
+        text = path.read_text(encoding="utf-8")
+        entries = tomllib.loads(text)
+    except OSError as problem:
+        raise SettingsError(
+            f"cannot be read: {problem.strerror}", file=str(path), remedy="check the path"
+        ) from problem
+    except (tomllib.TOMLDecodeError, UnicodeDecodeError) as problem:
+        raise SettingsError(f"no valid TOML: {problem}", file=str(path), remedy="mend the line") from problem
+    method = Method()
+    for key, value in entries.items():
+        try:
+            method = replace(method, **{key: _entry(key, value)})
+        except SettingsError as problem:
+            raise problem.located(file=str(path), place=_line_of(key, text)) from problem
+    return method
+
+
+def _entry(key: str, value: object) -> object:
+    """Turn one TOML value into the type of its field."""
+    known = [field.name for field in fields(Method)]
+    if key not in known:
+        raise SettingsError(f"unknown entry {key!r}", remedy=f"use {', '.join(known)}")
+    if key == "chain":
+        return tuple(value) if isinstance(value, list) else tuple(str(value).split(","))
+    if key in ("carbons", "methyls"):
+        return parse_range(str(value), key)
+    if key == "level":
+        if not isinstance(value, int | float):
+            raise SettingsError(f"level {value!r}", remedy="give a number like 0.95")
+        return float(value)
+    return str(value)
+
+
+def _line_of(key: str, text: str) -> str:
+    for number, line in enumerate(text.splitlines(), start=1):
+        if line.split("=")[0].strip().strip("\"'") == key:
+            return f"line {number}"
+    return ""
