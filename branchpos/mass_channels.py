@@ -20,6 +20,8 @@ class MassChannels:
     ----------
     intensity : relative to the base peak, shape (masses,); 0 where nothing was seen.
     doubtful : shape (masses,); true where the intensity may be a tenth of what was measured.
+    contaminated : shape (masses,); true where another substance stands on the mass number, which then says
+        nothing.
     foreign : intensity that accurate mass shows not to be a hydrocarbon ion, shape (masses,).
     threshold : smallest relative intensity that the recording kept.
     first, last : lightest and heaviest recorded mass number; absence outside says nothing.
@@ -28,6 +30,7 @@ class MassChannels:
 
     intensity: FloatArray
     doubtful: BoolArray
+    contaminated: BoolArray
     foreign: FloatArray
     threshold: float
     first: int
@@ -52,7 +55,7 @@ class MassChannels:
             intensity=intensity,
             seen=intensity > 0,
             doubtful=within & self.doubtful[inside],
-            recorded=(masses >= self.first) & (masses <= self.last),
+            recorded=(masses >= self.first) & (masses <= self.last) & ~(within & self.contaminated[inside]),
             threshold=self.threshold,
             omission=self.omission,
         )

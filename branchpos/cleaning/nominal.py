@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
+from branchpos.cleaning.bleed import BLEED_ON_SERIES, shows_bleed
 from branchpos.cleaning.mass_axis import align_masses, axis_is_steady
 from branchpos.mass_channels import MassChannels
 from branchpos.masses import electron_mass, isotopes
@@ -47,10 +48,15 @@ def to_channels(spectrum: Spectrum) -> tuple[MassChannels, tuple[str, ...]]:
     if short:
         notes.append(f"only {spectrum.mz.size} peaks: an absent peak is given little weight")
     own = ~foreign_peak
-    intensity = np.bincount(masses[own], weights=relative[own], minlength=size)
+    intensity = np.asarray(np.bincount(masses[own], weights=relative[own], minlength=size), dtype=float)
+    contaminated = np.zeros(size, dtype=bool)
+    if not spectrum.accurate and shows_bleed(intensity):
+        contaminated[[mass for mass in BLEED_ON_SERIES if mass < size]] = True
+        notes.append("column bleed (m/z 207, 281): the ions it shares with chains are left out")
     channels = MassChannels(
         intensity=intensity / max(float(intensity.max()), 1e-12),
         doubtful=np.bincount(masses, weights=spectrum.doubtful & own, minlength=size) > 0,
+        contaminated=contaminated,
         foreign=np.asarray(
             np.bincount(masses[foreign_peak], weights=relative[foreign_peak], minlength=size), dtype=float
         ),

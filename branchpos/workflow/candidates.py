@@ -1,19 +1,20 @@
 """From a spectrum to the chains worth a full look: enumerate, predict, screen.
 
 Few methyls are tried at every number of carbons; more methyls only where few already explain the spectrum to
-within a wide margin of the best, since every chain contains simpler ones that explain part of it.
+within a wide margin of the best, and better than none do, since every chain contains simpler ones that
+explain part of it.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
-from branchpos.enumerating import alkane_positions, regular_isoprenoids
+from branchpos.enumerating import alkane_positions, count_alkanes, regular_isoprenoids
 from branchpos.enumerating.sizes import plausible_carbons
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
@@ -29,8 +30,12 @@ FloatArray = NDArray[np.float64]
 
 _MARGINS = {2: 40.0, 3: 25.0}
 """Natural-log margin within which a number of carbons is looked at with 2, and with more methyls."""
+_LEAST_GAIN = 2.0
+"""Natural-log gain over the unbranched chain that one or two methyls must bring before more are tried."""
 _FITTED_FOR_STANDING = 3
 _CACHED_ROWS = 4000
+_MOST_CHAINS = 150_000
+"""Chains of one number of methyls that one look may try over all sizes; above, the likeliest sizes."""
 _ISOPRENOID_FROM = 4
 
 
@@ -61,6 +66,7 @@ class SizeGroup:
     remainder : log likelihood of the masses that no ion of the batches stands on.
     standing : log likelihood of the best chain with the remainder.
     best : that chain, as a batch of one.
+    unaffordable : numbers of methyls left out because the chains were too many.
     """
 
     carbons: int
@@ -68,6 +74,14 @@ class SizeGroup:
     remainder: Remainder | None = None
     standing: float = -np.inf
     best: SeriesBatch | None = None
+    unaffordable: list[int] = field(default_factory=list)
+
+    def gains_from_methyls(self, methyls: int) -> bool:
+        """Tell whether one or two methyls explain more than none, so that further ones are worth a look."""
+        top = {one.batch.positions.shape[1]: float(one.scores.max()) for one in self.screened}
+        if methyls < max(_MARGINS) or 0 not in top or len(top) == 1:
+            return True
+        return max(score for count, score in top.items() if count) > top[0] + _LEAST_GAIN
 
 
 def choose_carbons(channels: MassChannels, method: Method) -> range:
@@ -93,11 +107,40 @@ def screen_candidates(
     _extend(groups, few, channels, heaviest, model)
     for methyls in sorted(set(method.methyls) - set(few)):
         margin = _MARGINS[min(methyls, max(_MARGINS))]
-        _extend(_leading(groups, margin), [methyls], channels, heaviest, model)
+        hopeful = [group for group in _leading(groups, margin) if group.gains_from_methyls(methyls)]
+        _extend(_affordable(hopeful, methyls), [methyls], channels, heaviest, model)
     if method.methyls[0] <= 1 and method.methyls[-1] >= _ISOPRENOID_FROM:
         for group in _leading(groups, _MARGINS[max(_MARGINS)]):
+            if not group.gains_from_methyls(method.methyls[-1]):
+                continue
             _add_isoprenoids(group, method, channels, heaviest, model)
     return [group for group in groups if group.screened]
+
+
+def left_out(groups: Iterable[SizeGroup]) -> tuple[str, ...]:
+    """Say which chains were not looked at for want of time, so that the user can ask for them."""
+    by_methyls: dict[int, list[int]] = {}
+    for group in groups:
+        for methyls in group.unaffordable:
+            by_methyls.setdefault(methyls, []).append(group.carbons)
+    return tuple(
+        f"chains of {min(sizes)} to {max(sizes)} carbons with {methyls} methyls were too many to try, as the "
+        f"spectrum leaves the size open; narrow it with --carbons"
+        for methyls, sizes in by_methyls.items()
+    )
+
+
+def _affordable(groups: Sequence[SizeGroup], methyls: int) -> list[SizeGroup]:
+    """Keep the likeliest sizes that together stay within the number of chains one look may try."""
+    kept: list[SizeGroup] = []
+    total = 0
+    for group in sorted(groups, key=lambda one: -one.standing):
+        total += count_alkanes(group.carbons, methyls)
+        if kept and total > _MOST_CHAINS:
+            group.unaffordable.append(methyls)
+        else:
+            kept.append(group)
+    return kept
 
 
 def heaviest_mass(carbons: range) -> int:

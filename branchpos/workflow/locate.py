@@ -9,7 +9,7 @@ from branchpos.enumerating import PRIORS
 from branchpos.retention_index import RetentionIndex
 from branchpos.spectrum import Spectrum
 from branchpos.verdict import Verdict
-from branchpos.workflow.candidates import choose_carbons, heaviest_mass, screen_candidates
+from branchpos.workflow.candidates import choose_carbons, heaviest_mass, left_out, screen_candidates
 from branchpos.workflow.method import Method
 from branchpos.workflow.model import Model, shipped_model
 from branchpos.workflow.reasons import reasons
@@ -64,5 +64,5 @@ def locate_branches(
         credible_set=call.credible_set,
         prior=str(PRIORS[method.prior]),
         reasons=reasons(call, ranked, posterior.none_of_these),
-        warnings=(*spectrum.warnings, *doubts),
+        warnings=(*spectrum.warnings, *doubts, *left_out(groups)),
     )

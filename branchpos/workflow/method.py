@@ -132,26 +132,33 @@ def read_method(path: Path) -> Method:
     method = Method()
     for key, value in entries.items():
         try:
-            method = replace(method, **{key: _entry(key, value)})
+            method = _with_entry(method, key, value)
         except SettingsError as problem:
             raise problem.located(file=str(path), place=_line_of(key, text)) from problem
     return method
 
 
-def _entry(key: str, value: object) -> object:
-    """Turn one TOML value into the type of its field."""
+def _with_entry(method: Method, key: str, value: object) -> Method:
+    """Return the method with one entry of a method file applied."""
+    match key, value:
+        case "chain", list():
+            return replace(method, chain=tuple(str(name) for name in value))
+        case "chain", str():
+            return replace(method, chain=tuple(value.split(",")))
+        case "carbons", str() | int():
+            return replace(method, carbons=parse_range(str(value), key))
+        case "methyls", str() | int():
+            return replace(method, methyls=parse_range(str(value), key))
+        case "formula", str():
+            return replace(method, formula=value)
+        case "prior", str():
+            return replace(method, prior=value)
+        case "level", float():
+            return replace(method, level=value)
     known = [field.name for field in fields(Method)]
-    if key not in known:
-        raise SettingsError(f"unknown entry {key!r}", remedy=f"use {', '.join(known)}")
-    if key == "chain":
-        return tuple(value) if isinstance(value, list) else tuple(str(value).split(","))
-    if key in ("carbons", "methyls"):
-        return parse_range(str(value), key)
-    if key == "level":
-        if not isinstance(value, int | float):
-            raise SettingsError(f"level {value!r}", remedy="give a number like 0.95")
-        return float(value)
-    return str(value)
+    if key in known:
+        raise SettingsError(f"{key} = {value!r} has the wrong type", remedy="see the example in the README")
+    raise SettingsError(f"unknown entry {key!r}", remedy=f"use {', '.join(known)}")
 
 
 def _line_of(key: str, text: str) -> str:
