@@ -20,6 +20,8 @@ class IonKind(IntEnum):
     REARRANGED = 1
     """Its partner one hydrogen lighter: a hydrogen moved to the departing radical (even mass)."""
     MOLECULAR = 2
+    SHARED = 3
+    """Alike for all isomers: ions of the end group, low daughter ions."""
 
 
 @dataclass(frozen=True, slots=True)

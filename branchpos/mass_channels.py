@@ -7,6 +7,8 @@ from dataclasses import dataclass, replace
 import numpy as np
 from numpy.typing import NDArray
 
+from branchpos.end_group import EndGroup
+
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.intp]
 BoolArray = NDArray[np.bool_]
@@ -36,6 +38,12 @@ class MassChannels:
     first: int
     last: float
     omission: float
+
+    def for_class(self, end_group: EndGroup) -> MassChannels:
+        """Return the channels as a class reads them: ions with an end group need not be hydrocarbons."""
+        if end_group.added.o + end_group.added.n + end_group.added.si == 0 or not self.foreign.any():
+            return self
+        return replace(self, intensity=self.intensity + self.foreign, foreign=np.zeros_like(self.foreign))
 
     def with_omission(self, least: float) -> MassChannels:
         """Return the channels with at least this chance of omission."""

@@ -9,7 +9,7 @@ one bad peak cannot flip a verdict.
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 from math import log, sqrt
 from types import MappingProxyType
@@ -39,29 +39,26 @@ class ErrorModel:
 
     Attributes
     ----------
-    scales : scale of the log error by ion kind: fragment, rearranged, molecular.
-    side_scale : the same for the ions all isomers share.
+    scales : scale of the log error by ion kind: fragment, rearranged, molecular, shared by all isomers.
     tilt_sd : spread of the mass discrimination, natural log for each 10 carbons.
     contrast_sd : spread of the weight of branch-steered ions against the rest, natural log.
     doublet_sd : spread of the even/odd ratio of branch-steered ions, natural log.
     """
 
-    scales: tuple[float, float, float]
-    side_scale: float
+    scales: tuple[float, float, float, float]
     tilt_sd: float
     contrast_sd: float
     doublet_sd: float
 
     def widened(self, factor: float) -> ErrorModel:
         """Return the model with every error scale multiplied."""
-        first, second, third = self.scales
-        return ErrorModel(
-            (first * factor, second * factor, third * factor),
-            self.side_scale * factor,
-            self.tilt_sd,
-            self.contrast_sd,
-            self.doublet_sd,
-        )
+        first, second, third, fourth = self.scales
+        return replace(self, scales=(first * factor, second * factor, third * factor, fourth * factor))
+
+    @property
+    def side_scale(self) -> float:
+        """Scale of the ions that all isomers share."""
+        return self.scales[3]
 
     @property
     def effect_sds(self) -> FloatArray:
@@ -89,7 +86,7 @@ SOUND = Quality(0.9, 1.0, 0.0)
 POOR = Quality(0.1, 2.0, 0.15)
 """Peaks out of line or missing, for every hypothesis alike; ``SOUND`` is the usual case."""
 
-STARTING_ERRORS = ErrorModel((0.30, 0.35, 0.8), 0.5, 0.3, 0.4, 0.25)
+STARTING_ERRORS = ErrorModel((0.30, 0.35, 0.8, 0.5), 0.3, 0.4, 0.25)
 """Error scales before any fit (judgement)."""
 
 
@@ -103,8 +100,7 @@ def errors_from_record(record: Mapping[str, object]) -> ErrorModel:
     """Turn a JSON record, as ``errors_to_record`` makes it, into an error model."""
     numbers = {key: float(str(value)) for key, value in record.items()}
     return ErrorModel(
-        (numbers["fragment"], numbers["rearranged"], numbers["molecular"]),
-        numbers["side"],
+        (numbers["fragment"], numbers["rearranged"], numbers["molecular"], numbers["shared"]),
         numbers["tilt"],
         numbers["contrast"],
         numbers["doublet"],
@@ -113,8 +109,8 @@ def errors_from_record(record: Mapping[str, object]) -> ErrorModel:
 
 def errors_to_record(errors: ErrorModel) -> Mapping[str, float]:
     """Return the error model as a JSON-ready record, natural-log units."""
-    names = ("fragment", "rearranged", "molecular", "side", "tilt", "contrast", "doublet")
-    values = (*errors.scales, errors.side_scale, errors.tilt_sd, errors.contrast_sd, errors.doublet_sd)
+    names = ("fragment", "rearranged", "molecular", "shared", "tilt", "contrast", "doublet")
+    values = (*errors.scales, errors.tilt_sd, errors.contrast_sd, errors.doublet_sd)
     return MappingProxyType(dict(zip(names, (round(v, 4) for v in values), strict=True)))
 
 

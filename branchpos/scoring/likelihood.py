@@ -29,7 +29,7 @@ from branchpos.scoring.error_model import (
 FloatArray = NDArray[np.float64]
 
 TILT_PIVOT = 10.0
-"""Size [carbons] at which the tilt leaves abundances alone; it is counted for each 10 carbons."""
+"""Mass [CH2 units of 14] at which the tilt leaves abundances alone; it is counted for each 10 units."""
 _STEPS = 4
 _LARGEST_STEP = 1.0
 _SMALLEST_SHARE = 1e-6
@@ -135,7 +135,7 @@ def _pose(view: ChannelView, batch: SeriesBatch, errors: ErrorModel) -> _Problem
     return _Problem(
         log_abundance=np.log(abundance),
         steered=batch.steered.astype(float),
-        tilt=np.asarray((batch.carbons - TILT_PIVOT) / TILT_PIVOT, dtype=float),
+        tilt=tilt_coordinate(batch.masses),
         rearranged=(batch.kinds == IonKind.REARRANGED).astype(float),
         scale=np.array(errors.scales)[batch.kinds],
         view=view,
@@ -143,6 +143,11 @@ def _pose(view: ChannelView, batch: SeriesBatch, errors: ErrorModel) -> _Problem
         log_threshold=float(np.log(view.threshold)),
         precision=np.concatenate([[0.0], errors.effect_sds**-2]),
     )
+
+
+def tilt_coordinate(masses: NDArray[np.intp]) -> FloatArray:
+    """Return how far each mass lies from the pivot, in units of the mass of ten carbons."""
+    return np.asarray(masses / (14 * TILT_PIVOT) - 1, dtype=float)
 
 
 def _starting_effects(problem: _Problem) -> FloatArray:

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from branchpos.ion_series import SeriesBatch
+from branchpos.ion_series import IonKind, SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.scoring.error_model import NOISE_OF_THRESHOLD, ErrorModel, log_below, log_density
 from branchpos.scoring.likelihood import TILT_PIVOT
@@ -72,7 +72,7 @@ def score_remainder(
         sizes = -(-side // 14)
         tilted = effects[0] + effects[1] * (sizes - TILT_PIVOT) / TILT_PIVOT
         expected = batch.side_abundance[members] * np.exp(tilted) + isotopes_below(channels, side)
-        by_mass[places] = _side(channels, side, expected, errors.side_scale)
+        by_mass[places] = _side(channels, side, expected, errors.scales[IonKind.SHARED])
     return Remainder(masses, by_mass)
 
 

@@ -18,7 +18,7 @@ from branchpos.scoring.error_model import (
     ErrorModel,
     log_density,
 )
-from branchpos.scoring.likelihood import TILT_PIVOT
+from branchpos.scoring.likelihood import tilt_coordinate
 
 FloatTable = NDArray[np.float32]
 
@@ -52,7 +52,7 @@ class _Screen:
         log_seen += np.where(view.doubtful[usable], SHIFTED_SHARE * TEN, 0.0)
         scale = np.array(errors.scales)[batch.kinds[usable]]
         scale = np.where(view.doubtful[usable], scale + 0.5 * TEN, scale)
-        self.tilt = ((batch.carbons[usable] - TILT_PIVOT) / TILT_PIVOT).astype(np.float32)
+        self.tilt = tilt_coordinate(batch.masses[usable]).astype(np.float32)
         self.observed = log_seen.astype(np.float32)
         self.inverse_scale = (1 / scale).astype(np.float32)
         self.unseen = np.flatnonzero(~seen)

@@ -9,20 +9,19 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
-from functools import lru_cache
 
 import numpy as np
 from numpy.typing import NDArray
 
-from branchpos.enumerating import alkane_positions, count_alkanes, regular_isoprenoids
+from branchpos.end_group import ALKANE, END_GROUPS, EndGroup
+from branchpos.enumerating import count_chains, regular_isoprenoids
 from branchpos.enumerating.sizes import plausible_carbons
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
-from branchpos.predicting.alkanes import predict_alkanes
-from branchpos.predicting.parameters import YieldParameters
 from branchpos.scoring.likelihood import fit_batch
 from branchpos.scoring.remainder import Remainder, score_remainder
 from branchpos.scoring.screening import screen_batch
+from branchpos.workflow.first_look import likely_sizes
 from branchpos.workflow.method import Method
 from branchpos.workflow.model import Model
 
@@ -33,7 +32,6 @@ _MARGINS = {2: 40.0, 3: 25.0}
 _LEAST_GAIN = 2.0
 """Natural-log gain over the unbranched chain that one or two methyls must bring before more are tried."""
 _FITTED_FOR_STANDING = 3
-_CACHED_ROWS = 4000
 _MOST_CHAINS = 150_000
 """Chains of one number of methyls that one look may try over all sizes; above, the likeliest sizes."""
 _ISOPRENOID_FROM = 4
@@ -57,10 +55,11 @@ class Screened:
 
 @dataclass(slots=True, eq=False)
 class SizeGroup:
-    """All that was tried at one number of carbons.
+    """All that was tried of one class at one number of carbons.
 
     Attributes
     ----------
+    end_group : the class.
     carbons : carbons of the skeleton.
     screened : batches by number of methyls.
     remainder : log likelihood of the masses that no ion of the batches stands on.
@@ -69,6 +68,7 @@ class SizeGroup:
     unaffordable : numbers of methyls left out because the chains were too many.
     """
 
+    end_group: EndGroup
     carbons: int
     screened: list[Screened] = field(default_factory=list)
     remainder: Remainder | None = None
@@ -84,25 +84,28 @@ class SizeGroup:
         return max(score for count, score in top.items() if count) > top[0] + _LEAST_GAIN
 
 
-def choose_carbons(channels: MassChannels, method: Method) -> range:
-    """Return the numbers of carbons to look at: as asked, or as the spectrum allows."""
+def choose_sizes(channels: MassChannels, method: Method, model: Model) -> list[tuple[EndGroup, int]]:
+    """Return the classes and numbers of carbons to look at: as asked, or as the spectrum allows."""
+    classes = [END_GROUPS[name] for name in method.chain]
     if method.formula is not None:
-        carbons = method.formula_carbons()
-        return range(carbons, carbons + 1)
-    return method.carbons if method.carbons is not None else plausible_carbons(channels)
+        return method.sizes_of_formula()
+    if classes == [ALKANE]:
+        carbons = method.carbons if method.carbons is not None else plausible_carbons(channels)
+        return [(ALKANE, number) for number in carbons]
+    return likely_sizes(channels, classes, method.carbons, model)
 
 
 def screen_candidates(
-    channels: MassChannels, carbons: range, method: Method, model: Model
+    channels: MassChannels, sizes: Sequence[tuple[EndGroup, int]], method: Method, model: Model
 ) -> list[SizeGroup]:
-    """Screen every chain of the given carbons and of the method's methyls.
+    """Screen every chain of the given classes and carbons and of the method's methyls.
 
     Returns
     -------
-    one group a number of carbons; those that fell behind hold few methyls only.
+    one group a class and number of carbons; those that fell behind hold few methyls only.
     """
-    groups = [SizeGroup(number) for number in carbons]
-    heaviest = heaviest_mass(carbons)
+    groups = [SizeGroup(end_group, carbons) for end_group, carbons in sizes]
+    heaviest = heaviest_mass(sizes)
     few = [k for k in method.methyls if k < min(_MARGINS)] or [method.methyls[0]]
     _extend(groups, few, channels, heaviest, model)
     for methyls in sorted(set(method.methyls) - set(few)):
@@ -111,9 +114,8 @@ def screen_candidates(
         _extend(_affordable(hopeful, methyls), [methyls], channels, heaviest, model)
     if method.methyls[0] <= 1 and method.methyls[-1] >= _ISOPRENOID_FROM:
         for group in _leading(groups, _MARGINS[max(_MARGINS)]):
-            if not group.gains_from_methyls(method.methyls[-1]):
-                continue
-            _add_isoprenoids(group, method, channels, heaviest, model)
+            if group.end_group == ALKANE and group.gains_from_methyls(method.methyls[-1]):
+                _add_isoprenoids(group, method, channels, heaviest, model)
     return [group for group in groups if group.screened]
 
 
@@ -135,7 +137,7 @@ def _affordable(groups: Sequence[SizeGroup], methyls: int) -> list[SizeGroup]:
     kept: list[SizeGroup] = []
     total = 0
     for group in sorted(groups, key=lambda one: -one.standing):
-        total += count_alkanes(group.carbons, methyls)
+        total += count_chains(group.carbons, methyls, group.end_group)
         if kept and total > _MOST_CHAINS:
             group.unaffordable.append(methyls)
         else:
@@ -143,9 +145,9 @@ def _affordable(groups: Sequence[SizeGroup], methyls: int) -> list[SizeGroup]:
     return kept
 
 
-def heaviest_mass(carbons: range) -> int:
-    """Return the last mass number that chains of these carbons speak of: M + 3 of the largest."""
-    return 14 * max(carbons) + 5
+def heaviest_mass(sizes: Iterable[tuple[EndGroup, int]]) -> int:
+    """Return the last mass number that chains of these sizes speak of: M + 3 of the heaviest."""
+    return max(14 * carbons + 5 + end_group.added.nominal_mass for end_group, carbons in sizes)
 
 
 def _leading(groups: list[SizeGroup], margin: float) -> list[SizeGroup]:
@@ -158,9 +160,8 @@ def _extend(
 ) -> None:
     for group in groups:
         for count in methyls:
-            positions = alkane_positions(group.carbons - count, count)
-            if len(positions):
-                batch = _predicted(model.yields, group.carbons - count, count)
+            if count_chains(group.carbons, count, group.end_group):
+                batch = model.of(group.end_group).predict_all(group.carbons - count, count)
                 _add(group, batch, channels, heaviest, model)
 
 
@@ -168,7 +169,7 @@ def _add_isoprenoids(
     group: SizeGroup, method: Method, channels: MassChannels, heaviest: int, model: Model
 ) -> None:
     for backbone, positions in _isoprenoid_rows(group.carbons, method.methyls[-1]):
-        batch = predict_alkanes(model.yields, backbone, positions)
+        batch = model.of(ALKANE).predict(backbone, positions)
         _add(group, batch, channels, heaviest, model, is_family=True)
 
 
@@ -191,26 +192,15 @@ def _add(
     is_family: bool = False,
 ) -> None:
     """Screen a batch and let its best chains say where the whole size group stands."""
+    errors, channels = model.of(group.end_group).errors, channels.for_class(group.end_group)
     view = channels.at(batch.masses)
-    scores = screen_batch(view, batch, model.errors)
+    scores = screen_batch(view, batch, errors)
     group.screened.append(Screened(batch, scores, is_family))
     leading = batch.take(np.argsort(scores)[::-1][:_FITTED_FOR_STANDING])
-    fit = fit_batch(view, leading, model.errors)
+    fit = fit_batch(view, leading, errors)
     top = int(fit.log_likelihood.argmax())
-    remainder = score_remainder(channels, batch, fit.effects[top], heaviest, model.errors)
+    remainder = score_remainder(channels, batch, fit.effects[top], heaviest, errors)
     standing = float(fit.log_likelihood[top]) + remainder.total
     if standing > group.standing:
         group.standing, group.remainder = standing, remainder
         group.best = leading.take(np.array([top]))
-
-
-def _predicted(yields: YieldParameters, backbone: int, methyls: int) -> SeriesBatch:
-    """Predict all alkanes of a backbone; small batches are kept for the next spectrum."""
-    if len(positions := alkane_positions(backbone, methyls)) <= _CACHED_ROWS:
-        return _predicted_and_kept(yields, backbone, methyls)
-    return predict_alkanes(yields, backbone, positions)
-
-
-@lru_cache(maxsize=192)
-def _predicted_and_kept(yields: YieldParameters, backbone: int, methyls: int) -> SeriesBatch:
-    return predict_alkanes(yields, backbone, alkane_positions(backbone, methyls))

@@ -9,7 +9,7 @@ from branchpos.enumerating import PRIORS
 from branchpos.retention_index import RetentionIndex
 from branchpos.spectrum import Spectrum
 from branchpos.verdict import Verdict
-from branchpos.workflow.candidates import choose_carbons, heaviest_mass, left_out, screen_candidates
+from branchpos.workflow.candidates import choose_sizes, heaviest_mass, left_out, screen_candidates
 from branchpos.workflow.method import Method
 from branchpos.workflow.model import Model, shipped_model
 from branchpos.workflow.reasons import reasons
@@ -42,9 +42,9 @@ def locate_branches(
     """
     method, model = method or Method(), model or shipped_model()
     channels, doubts = to_channels(spectrum)
-    carbons = choose_carbons(channels, method)
-    groups = screen_candidates(channels, carbons, method, model)
-    recordings = judge_quality(channels, groups, heaviest_mass(carbons), model)
+    sizes = choose_sizes(channels, method, model)
+    groups = screen_candidates(channels, sizes, method, model)
+    recordings = judge_quality(channels, groups, heaviest_mass(sizes), model)
     scored = score_candidates(recordings, groups, retention_index, method, model)
     rivals = score_rivals(recordings, groups, retention_index)
     posterior = normalise([one.log_joint for one in scored], rivals)

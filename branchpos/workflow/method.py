@@ -6,7 +6,7 @@ import tomllib
 from dataclasses import dataclass, fields, replace
 from pathlib import Path
 
-from branchpos.end_group import END_GROUPS
+from branchpos.end_group import END_GROUPS, EndGroup
 from branchpos.enumerating import PRIORS
 from branchpos.errors import SettingsError
 from branchpos.masses import Formula, parse_formula
@@ -14,7 +14,8 @@ from branchpos.masses import Formula, parse_formula
 ALL_CARBONS = range(5, 61)
 """Carbons that may be asked for: smaller chains have no branch to place, larger ones were not checked."""
 MOST_METHYLS = 6
-_PLACED_CLASSES = ("alkane",)
+PLACED_CLASSES = tuple(name for name in END_GROUPS if name != "alkene")
+"""Classes whose branches can be placed; alkenes are recognised only."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -36,7 +37,7 @@ class Method:
     SettingsError : a value is out of range or unknown.
     """
 
-    chain: tuple[str, ...] = ("alkane",)
+    chain: tuple[str, ...] = PLACED_CLASSES
     carbons: range | None = None
     methyls: range = range(5)
     formula: str | None = None
@@ -47,7 +48,7 @@ class Method:
         for name in self.chain:
             _check_class(name)
         if not self.chain:
-            raise SettingsError("no chain class", remedy=f"choose from {', '.join(_PLACED_CLASSES)}")
+            raise SettingsError("no chain class", remedy=f"choose from {', '.join(PLACED_CLASSES)}")
         if self.prior not in PRIORS:
             raise SettingsError(f"prior {self.prior!r}", remedy=f"choose from {', '.join(PRIORS)}")
         if not 0.5 <= self.level < 1:
@@ -56,33 +57,39 @@ class Method:
         if self.carbons is not None:
             _check_range("carbons", self.carbons, ALL_CARBONS)
         if self.formula is not None:
-            self.formula_carbons()
+            self.sizes_of_formula()
 
-    def formula_carbons(self) -> int:
-        """Return the carbons that the formula leaves for an alkane.
+    def sizes_of_formula(self) -> list[tuple[EndGroup, int]]:
+        """Return the classes and numbers of carbons that have the formula.
 
         Raises
         ------
-        SettingsError : the formula is not one, or is not that of an alkane.
+        SettingsError : the formula is not one, or is that of no chain of the asked classes.
         """
         try:
             formula = parse_formula(self.formula or "")
         except ValueError as problem:
             raise SettingsError(str(problem), remedy="write it like C27H56") from problem
-        if formula != Formula(formula.c, 2 * formula.c + 2) or formula.c not in ALL_CARBONS:
+        classes = [END_GROUPS[name] for name in self.chain]
+        bare = [(one, formula - one.added) for one in classes]
+        found = [
+            (one, rest.c) for one, rest in bare if rest == Formula(rest.c, 2 * rest.c + 2) and rest.c > 1
+        ]
+        if not found:
             raise SettingsError(
-                f"formula {self.formula} is not an alkane of {ALL_CARBONS[0]} to {ALL_CARBONS[-1]} carbons",
+                f"formula {self.formula} fits no saturated chain of the classes asked for",
                 remedy="leave --formula out, or check the chain class",
             )
-        return formula.c
+        return found
 
 
 def _check_class(name: str) -> None:
-    if name in _PLACED_CLASSES:
+    if name in PLACED_CLASSES:
         return
     if name in END_GROUPS:
         raise SettingsError(
-            f"chain class {name!r} cannot be placed yet", remedy=f"choose from {', '.join(_PLACED_CLASSES)}"
+            f"no branch can be placed in chain class {name!r}",
+            remedy=f"choose from {', '.join(PLACED_CLASSES)}",
         )
     raise SettingsError(f"chain class {name!r} is unknown", remedy=f"choose from {', '.join(END_GROUPS)}")
 

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from numpy.typing import NDArray
 
+from branchpos.end_group import END_GROUPS, EndGroup
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.scoring.error_model import POOR, SOUND, ErrorModel, Quality
@@ -18,6 +19,7 @@ from branchpos.workflow.model import Model
 
 FloatArray = NDArray[np.float64]
 
+ALKENE = END_GROUPS["alkene"]
 _MARGIN = 6.0
 """Natural-log margin within which a reading of the quality counts."""
 
@@ -28,23 +30,36 @@ class Recording:
 
     Attributes
     ----------
-    channels, errors : observations and error scales of that quality.
+    channels : observations of that quality.
+    model : the fitted model.
+    widening : factor on all error scales.
     log_prior : natural log of its prior.
     heaviest : last mass number that any hypothesis of the comparison speaks of.
     """
 
     channels: MassChannels
-    errors: ErrorModel
+    model: Model
+    widening: float
     log_prior: float
     heaviest: int
 
     def fit(self, batch: SeriesBatch) -> Fit:
         """Score a batch on its own ions."""
-        return fit_batch(self.channels.at(batch.masses), batch, self.errors)
+        view = self.channels.for_class(batch.end_group).at(batch.masses)
+        return fit_batch(view, batch, self._errors(batch.end_group))
 
     def remainder(self, batch: SeriesBatch, effects: FloatArray) -> Remainder:
         """Score the masses that are no ions of the batch."""
-        return score_remainder(self.channels, batch, effects, self.heaviest, self.errors)
+        channels = self.channels.for_class(batch.end_group)
+        return score_remainder(channels, batch, effects, self.heaviest, self._errors(batch.end_group))
+
+    def widened(self, factor: float) -> Recording:
+        """Return the reading with every error scale multiplied."""
+        return replace(self, widening=self.widening * factor)
+
+    def _errors(self, end_group: EndGroup) -> ErrorModel:
+        known = self.model.errors if end_group == ALKENE else self.model.of(end_group).errors
+        return known.widened(self.widening)
 
     def evidence(self, batch: SeriesBatch) -> float:
         """Return log prior times likelihood of the best chain of a batch on all masses."""
@@ -73,7 +88,8 @@ def judge_quality(
 def _recorded_as(channels: MassChannels, quality: Quality, heaviest: int, model: Model) -> Recording:
     return Recording(
         channels.with_omission(quality.omission),
-        model.errors.widened(quality.widening),
+        model,
+        quality.widening,
         float(np.log(quality.prior)),
         heaviest,
     )

@@ -12,7 +12,6 @@ from branchpos.enumerating import PRIORS
 from branchpos.hypothesis import Rival
 from branchpos.ion_series import SeriesBatch
 from branchpos.predicting.alkenes import predict_alkene
-from branchpos.predicting.retention import predict_retention
 from branchpos.retention_index import RetentionIndex
 from branchpos.scoring.likelihood import Fit
 from branchpos.scoring.remainder import Remainder, score_no_chain
@@ -21,6 +20,7 @@ from branchpos.workflow.candidates import Screened, SizeGroup
 from branchpos.workflow.method import ALL_CARBONS, Method
 from branchpos.workflow.model import Model
 from branchpos.workflow.recordings import Recording
+from branchpos.workflow.retention import has_retention_model, predict_index
 
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.intp]
@@ -83,9 +83,9 @@ def score_candidates(
         for (group, screened), (prior, retention, _) in zip(pairs, known, strict=True)
     ]
     lowest = _cut(np.concatenate(rough))
-    rests = {group.carbons: [_rest(one, group) for one in recordings] for group in groups}
+    rests = {id(group): [_rest(one, group) for one in recordings] for group in groups}
     return [
-        _scored(screened, np.flatnonzero(joint >= lowest), before, recordings, rests[group.carbons])
+        _scored(screened, np.flatnonzero(joint >= lowest), before, recordings, rests[id(group)])
         for (group, screened), joint, before in zip(pairs, rough, known, strict=True)
     ]
 
@@ -113,13 +113,14 @@ def _known_beforehand(
 ) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Return log prior, log likelihood of the index and its residual for every chain."""
     batch = screened.batch
-    prior = PRIORS[method.prior].log_prior(batch.positions, batch.backbone)
+    prior = PRIORS[method.prior].log_prior(batch.positions, batch.backbone, batch.end_group)
     if screened.is_family:
         prior = prior + _family_gain(batch, method)
-    prior = prior + np.log((1 - RIVAL_SHARE * len(Rival)) / len(ALL_CARBONS))
-    if measured is None:
-        return prior, np.zeros(len(batch)), np.full(len(batch), np.nan)
-    mean, sd = predict_retention(batch.positions.astype(np.intp), batch.backbone, model.retention)
+    prior = prior + np.log((1 - RIVAL_SHARE * len(Rival)) / (len(ALL_CARBONS) * len(method.chain)))
+    if measured is None or not has_retention_model(batch.end_group):
+        flat = 0.0 if measured is None else -float(np.log(_RIVAL_INDEX_SPAN))
+        return prior, np.full(len(batch), flat), np.full(len(batch), np.nan)
+    mean, sd = predict_index(batch.positions, batch.backbone, batch.end_group, model)
     return prior, retention_log_likelihood(measured, mean, sd), retention_z(measured, mean, sd)
 
 
@@ -158,18 +159,32 @@ def score_rivals(
 ) -> dict[Rival, float]:
     """Return the log of prior times likelihood of each rival, summed over the sizes that matter."""
     share = np.log(RIVAL_SHARE) - (np.log(_RIVAL_INDEX_SPAN) if measured else 0.0)
-    per_size = share - np.log(len(ALL_CARBONS))
     best = max(group.standing for group in groups)
     sizes = [group for group in groups if group.standing >= best - _RIVAL_MARGIN]
-    wide = [(recording, group) for recording in recordings for group in sizes]
-    otherwise = [_lone(one, _mean_chain(group), _WIDENED_OTHERWISE) for one, group in wide]
-    alkenes = [_lone(one, predict_alkene(group.carbons), _WIDENED_ALKENE) for one, group in wide]
+    per_size = share - np.log(len(ALL_CARBONS) * len({group.end_group for group in groups}))
+    otherwise = [
+        one.widened(_WIDENED_OTHERWISE).evidence(_mean_chain(group)) for one in recordings for group in sizes
+    ]
+    alkenes = [
+        one.widened(_WIDENED_ALKENE).evidence(predict_alkene(carbons))
+        for one in recordings
+        for carbons in _alkene_sizes(sizes)
+    ]
     nothing = score_no_chain(recordings[0].channels, recordings[0].heaviest)
     return {
         Rival.OTHERWISE_BRANCHED: float(np.logaddexp.reduce(otherwise) + per_size),
-        Rival.ALKENE: float(np.logaddexp.reduce(alkenes) + per_size),
+        Rival.ALKENE: float(np.logaddexp.reduce(alkenes) + share - np.log(len(ALL_CARBONS))),
         Rival.NO_CHAIN: nothing.total + float(share),
     }
+
+
+def _alkene_sizes(sizes: Sequence[SizeGroup]) -> list[int]:
+    """Return the carbons of alkenes about as heavy as the chains that matter, with and without end group."""
+    found = set()
+    for group in sizes:
+        added = group.end_group.added.nominal_mass
+        found |= {group.carbons, group.carbons + round((added + 2) / 14)}
+    return sorted(carbons for carbons in found if carbons in ALL_CARBONS)
 
 
 def _mean_chain(group: SizeGroup) -> SeriesBatch:
@@ -182,7 +197,3 @@ def _mean_chain(group: SizeGroup) -> SeriesBatch:
         abundance=mean.astype(np.float32),
         steered=batch.steered.mean(axis=0, keepdims=True),
     )
-
-
-def _lone(recording: Recording, batch: SeriesBatch, widened: float) -> float:
-    return replace(recording, errors=recording.errors.widened(widened)).evidence(batch)

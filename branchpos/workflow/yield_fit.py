@@ -1,4 +1,4 @@
-"""Fitting the cleavage model to spectra of known chains: Gauss-Newton on robust weights, with covariance.
+"""Fitting a class's model to spectra of known chains: Gauss-Newton on robust weights, with covariance.
 
 Each record adjusts its own instrument effects; they are eliminated from the normal equations, so that what
 an instrument does is not mistaken for chemistry. Error scales follow from the weighted residuals.
@@ -13,15 +13,15 @@ import numpy as np
 from numpy.typing import NDArray
 
 from branchpos.cleaning.nominal import to_channels
+from branchpos.end_group import ALKANE, EndGroup
 from branchpos.ion_series import IonKind, SeriesBatch
 from branchpos.mass_channels import MassChannels
-from branchpos.predicting.alkanes import predict_alkanes
-from branchpos.predicting.parameters import PARAMETERS, YieldParameters, prior_parameters
-from branchpos.predicting.yields import side_ions
+from branchpos.predicting.parameters import YieldParameters
+from branchpos.predicting.predictor import Predictor, predictor_of
 from branchpos.scoring.error_model import STARTING_ERRORS, ErrorModel
-from branchpos.scoring.likelihood import TILT_PIVOT, Linearised, linearise, log_expectation
-from branchpos.scoring.remainder import isotopes_below
+from branchpos.scoring.likelihood import Linearised, linearise, log_expectation
 from branchpos.workflow.reference_spectra import KnownSpectrum
+from branchpos.workflow.side_ions import with_side_ions
 
 FloatArray = NDArray[np.float64]
 
@@ -31,8 +31,11 @@ _DIFFERENCE = 1e-3
 _LARGEST_STEP = 0.5
 _SCALE_PRIOR_STRENGTH = 20.0
 """How many ions the starting error scales count for."""
+USUAL_TILT_SD = 1.0
+"""Spread of the tilt between instruments, as the alkanes measure it; other classes take it over."""
 _LEAST_TILT_SD = 0.3
-_SIDE_PRIOR_STRENGTH = 3.0
+_TILT_PRIOR_STRENGTH = 3.0
+"""How many records the starting spread of the tilt counts for."""
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -51,83 +54,99 @@ class YieldFit:
 
 
 @dataclass(frozen=True, slots=True, eq=False)
-class _Record:
+class Record:
+    """One record of the fit.
+
+    Attributes
+    ----------
+    channels : what was observed.
+    backbone, positions : the known chain, positions of shape (1, methyls).
+    weight : what the record counts for.
+    """
+
     channels: MassChannels
     backbone: int
     positions: NDArray[np.int16]
     weight: float
-
-    def predict(self, parameters: YieldParameters) -> SeriesBatch:
-        return predict_alkanes(parameters, self.backbone, self.positions)
 
 
 def fit_yields(
     known: Sequence[KnownSpectrum],
     provenance: Mapping[str, str],
     *,
+    end_group: EndGroup = ALKANE,
     start: YieldFit | None = None,
     iterations: int = 25,
 ) -> YieldFit:
-    """Fit yields and error scales to spectra of known alkanes.
+    """Fit yields and error scales to spectra of known chains of one class.
 
     Parameters
     ----------
     known : the records; those that keep too few peaks should be left out by the caller.
     provenance : text fields kept with the parameters.
+    end_group : the chain class.
     start : a former fit to begin from; fewer iterations do then.
     """
+    predictor = predictor_of(end_group)
     records = [_to_record(one) for one in known]
-    parameters = start.parameters if start else prior_parameters()
-    errors = start.errors if start else STARTING_ERRORS
-    misfit, covariance = np.inf, parameters.covariance
+    values = start.parameters.values if start else predictor.prior_mean
+    errors = start.errors if start else replace(STARTING_ERRORS, tilt_sd=USUAL_TILT_SD)
+    misfit, covariance = np.inf, np.asarray(np.linalg.inv(predictor.prior_precision), dtype=float)
     for _ in range(iterations):
-        views = [_linearised(record, parameters, errors) for record in records]
-        values, covariance, misfit = _newton_step(records, views, parameters, errors)
-        parameters = YieldParameters(values, covariance, provenance)
-        errors = _scales(records, views, errors)
-    parameters = _with_side_ions(records, parameters, errors)
+        views = [_linearised(record, predictor, values, errors) for record in records]
+        scaled = _scales(records, predictor, views, errors)
+        values, covariance, misfit = _newton_step(records, predictor, views, values, errors)
+        errors = scaled if end_group == ALKANE else replace(scaled, tilt_sd=USUAL_TILT_SD)
+    parameters = YieldParameters(values, covariance, provenance)
+    if end_group == ALKANE:
+        parameters = with_side_ions([(one, one.channels) for one in records], parameters, errors)
     return YieldFit(parameters, errors, misfit)
 
 
-def _to_record(one: KnownSpectrum) -> _Record:
+def _to_record(one: KnownSpectrum) -> Record:
     positions = np.array([one.chain.methyls], dtype=np.int16).reshape(1, -1)
     channels, _ = to_channels(one.spectrum)
     weight = 1.0 if one.chain.is_branched else UNBRANCHED_WEIGHT
-    return _Record(channels, one.chain.backbone, positions, weight)
+    return Record(channels, one.chain.backbone, positions, weight)
 
 
-def _linearised(record: _Record, parameters: YieldParameters, errors: ErrorModel) -> Linearised:
-    batch = record.predict(parameters)
+def _linearised(record: Record, predictor: Predictor, values: FloatArray, errors: ErrorModel) -> Linearised:
+    batch = predictor.predict(values, record.backbone, record.positions)
     return linearise(record.channels.at(batch.masses), batch, errors)
 
 
 def _newton_step(
-    records: Sequence[_Record], views: Sequence[Linearised], parameters: YieldParameters, errors: ErrorModel
+    records: Sequence[Record],
+    predictor: Predictor,
+    views: Sequence[Linearised],
+    values: FloatArray,
+    errors: ErrorModel,
 ) -> tuple[FloatArray, FloatArray, float]:
     """Return new values, covariance and the misfit before the step."""
-    prior = prior_parameters()
-    precision = np.linalg.inv(prior.covariance)
-    offset = parameters.values - prior.values
+    precision = predictor.prior_precision
+    offset = values - predictor.prior_mean
     normal, gradient = precision.copy(), -precision @ offset
     misfit = float(offset @ precision @ offset)
     for record, view in zip(records, views, strict=True):
-        slopes = _slopes(record, view, parameters, errors)
+        slopes = _slopes(record, predictor, view, values, errors)
         inner, pull = _eliminated(slopes, view)
         normal += record.weight * inner
         gradient += record.weight * pull
         misfit += record.weight * float(view.weight @ view.residual**2)
     step = np.clip(np.linalg.solve(normal, gradient), -_LARGEST_STEP, _LARGEST_STEP)
-    return parameters.values + step, np.linalg.inv(normal), misfit
+    return np.asarray(values + step), np.asarray(np.linalg.inv(normal), dtype=float), misfit
 
 
-def _slopes(record: _Record, view: Linearised, parameters: YieldParameters, errors: ErrorModel) -> FloatArray:
+def _slopes(
+    record: Record, predictor: Predictor, view: Linearised, values: FloatArray, errors: ErrorModel
+) -> FloatArray:
     """Return the derivative of the log expectation by each parameter, shape (parameters, ions)."""
-    base = record.predict(parameters)
-    shifted = [base]
-    for index in range(len(PARAMETERS)):
-        values = parameters.values.copy()
-        values[index] += _DIFFERENCE
-        shifted.append(record.predict(replace(parameters, values=values)))
+    base = predictor.predict(values, record.backbone, record.positions)
+    shifted: list[SeriesBatch] = [base]
+    for index in range(values.size):
+        moved = values.copy()
+        moved[index] += _DIFFERENCE
+        shifted.append(predictor.predict(moved, record.backbone, record.positions))
     stacked = replace(
         base,
         positions=np.repeat(base.positions, len(shifted), axis=0),
@@ -149,57 +168,26 @@ def _eliminated(slopes: FloatArray, view: Linearised) -> tuple[FloatArray, Float
     return weighted @ slopes.T - through @ coupling.T, weighted @ view.residual - through @ effect_pull
 
 
-def _scales(records: Sequence[_Record], views: Sequence[Linearised], errors: ErrorModel) -> ErrorModel:
+def _scales(
+    records: Sequence[Record], predictor: Predictor, views: Sequence[Linearised], errors: ErrorModel
+) -> ErrorModel:
     """Re-estimate the error scale of each ion kind, and how much instruments tilt."""
+    kinds_count = len(IonKind)
     squares = np.array(STARTING_ERRORS.scales) ** 2 * _SCALE_PRIOR_STRENGTH
-    tilts = np.array([view.effects[1] for view in views])
-    counts = np.full(len(IonKind), _SCALE_PRIOR_STRENGTH)
+    counts = np.full(kinds_count, _SCALE_PRIOR_STRENGTH)
     old = np.array(errors.scales)
     for record, view in zip(records, views, strict=True):
-        kinds = record.predict(prior_parameters()).kinds
+        kinds = predictor.predict(predictor.prior_mean, record.backbone, record.positions).kinds
         pulling = (view.weight > 0) * record.weight
-        squares += np.bincount(kinds, pulling * view.weight * old[kinds] ** 2 * view.residual**2, 3)
-        counts += np.bincount(kinds, pulling, 3)
-    fragment, rearranged, molecular = np.sqrt(squares / counts).tolist()
-    tilt = float(np.sqrt((tilts**2).mean()))
-    return replace(errors, scales=(fragment, rearranged, molecular), tilt_sd=max(tilt, _LEAST_TILT_SD))
-
-
-def _with_side_ions(
-    records: Sequence[_Record], parameters: YieldParameters, errors: ErrorModel
-) -> YieldParameters:
-    """Set the side ions to the robust middle of what the records show above their carbon-13 neighbours."""
-    names = [parameter.name for parameter in PARAMETERS]
-    values, variances = parameters.values.copy(), np.diag(parameters.covariance).copy()
-    found: dict[str, list[float]] = {name: [] for name in names if name.startswith("side_")}
-    for record in records:
-        for name, ratio in _side_ratios(record, parameters, errors).items():
-            found[name].append(ratio)
-    for name, ratios in found.items():
-        index = names.index(name)
-        spread = 1.48 * float(np.median(np.abs(np.array(ratios) - np.median(ratios)))) if ratios else 0.0
-        weight = len(ratios) / (len(ratios) + _SIDE_PRIOR_STRENGTH)
-        middle = float(np.median(ratios)) if ratios else 0.0
-        values[index] = (1 - weight) * PARAMETERS[index].mean + weight * middle
-        variances[index] = max(spread, 0.1) ** 2 / (len(ratios) + 1)
-    covariance = parameters.covariance.copy()
-    np.fill_diagonal(covariance, variances)
-    return replace(parameters, values=values, covariance=covariance)
-
-
-def _side_ratios(record: _Record, parameters: YieldParameters, errors: ErrorModel) -> dict[str, float]:
-    """Return, by parameter, the log of an observed side ion over the daughter ion it is predicted from."""
-    batch = record.predict(parameters)
-    named = parameters.named()
-    effects = linearise(record.channels.at(batch.masses), batch, errors).effects
-    observed = record.channels.at(batch.side_masses)
-    excess = observed.intensity - isotopes_below(record.channels, batch.side_masses)
-    usable = observed.seen & observed.recorded & ~observed.doubtful & (excess > 0)
-    ratios = {}
-    for column, (series, size) in enumerate(side_ions(batch.skeleton_carbons)):
-        if usable[column]:
-            name = f"side_{series}_{size}"
-            tilted = effects[0] + effects[1] * (size - TILT_PIVOT) / TILT_PIVOT
-            bare = np.log(batch.side_abundance[column]) - named[name]
-            ratios[name] = float(np.log(excess[column]) - tilted - bare)
-    return ratios
+        squares += np.bincount(kinds, pulling * view.weight * old[kinds] ** 2 * view.residual**2, kinds_count)
+        counts += np.bincount(kinds, pulling, kinds_count)
+    fragment, rearranged, molecular, shared = np.sqrt(squares / counts).tolist()
+    tilts = sum(float(view.effects[1]) ** 2 for view in views)
+    tilt = np.sqrt(
+        (tilts + STARTING_ERRORS.tilt_sd**2 * _TILT_PRIOR_STRENGTH) / (len(views) + _TILT_PRIOR_STRENGTH)
+    )
+    return replace(
+        errors,
+        scales=(fragment, rearranged, molecular, shared),
+        tilt_sd=max(float(tilt), _LEAST_TILT_SD),
+    )
