@@ -1,0 +1,1 @@
+"""Stage 9: results as JSON, console text and figures."""
