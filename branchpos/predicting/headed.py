@@ -28,6 +28,8 @@ TAIL = 6
 POOL_SIZES = range(3, 9)
 POOL_RESIDUES = (1, 0, -1, -2, -3)
 """Low hydrocarbon ions, CnH2n+1 to CnH2n-3, alike for all isomers."""
+_USUAL_LENGTH = 14
+"""Backbone carbons at which the tables are quoted; each family grows or falls by a rate from there."""
 _CARBON_13 = 0.0108
 
 
@@ -113,6 +115,7 @@ def entries(rules: ClassRules) -> tuple[Entry, ...]:
         found += [Entry(f"{family.name}_{bond}", _start(family, bond), wide) for bond in range(1, TABLE + 1)]
         found += [Entry(f"{family.name}_end_{bond}", 0.0, 0.7) for bond in range(1, TAIL + 1)]
         found.append(Entry(f"{family.name}_slope", -0.02, 0.05))
+        found.append(Entry(f"{family.name}_length", 0.0, 0.1))
     found += [Entry(f"loss_{mass}", level, wide) for mass, level in rules.losses.items()]
     found += [Entry(f"fixed_{mass}", level, wide) for mass, level in rules.fixed.items()]
     found += [
@@ -216,7 +219,8 @@ def _bond_levels(family: Family, named: Mapping[str, float], backbone: int) -> F
     corrections = np.array([named[f"{family.name}_end_{bond}"] for bond in range(1, TAIL + 1)] + [0.0])
     level = table[np.minimum(own_end, TABLE) - 1]
     level = level + named[f"{family.name}_slope"] * np.maximum(own_end - TABLE, 0)
-    return np.asarray(level + corrections[np.minimum(other_end, TAIL + 1) - 1])
+    length = named[f"{family.name}_length"] * (backbone - _USUAL_LENGTH)
+    return np.asarray(level + length + corrections[np.minimum(other_end, TAIL + 1) - 1])
 
 
 def _mass(family: Family, end_group: EndGroup, size: int) -> int:

@@ -2,8 +2,8 @@
 
 The log of an abundance errs by Student's t with 4 degrees of freedom, whose distribution function has a
 closed form, so that an unseen peak can be charged for the chance of falling below the threshold. Noise of
-half the threshold is added to every expected abundance. No single ion can cost more than the floor, so that
-one bad peak cannot flip a verdict.
+half the threshold is added to every expected abundance. The tails are so heavy, and no single ion can cost
+more than the floor, that one bad peak does not flip a verdict.
 """
 
 from __future__ import annotations
@@ -22,8 +22,10 @@ from branchpos.reference_data import load_reference
 FloatArray = NDArray[np.float64]
 
 DEGREES_OF_FREEDOM = 4
-SEEN_FLOOR = -6.5
-"""Lowest log likelihood of one seen ion (judgement: a tenfold error at the usual scale)."""
+SEEN_FLOOR = -12.0
+"""Lowest log likelihood of one seen ion (judgement: a hundredfold error at the usual scale)."""
+OMISSION_FALL = 0.5
+"""Power of (threshold / expectation) by which the chance falls that a peak list leaves out a peak."""
 NOISE_OF_THRESHOLD = 0.5
 """Additive noise as a share of the detection threshold."""
 SHIFTED_SHARE = 0.7

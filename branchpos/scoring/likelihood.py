@@ -17,6 +17,7 @@ from branchpos.ion_series import IonKind, SeriesBatch
 from branchpos.mass_channels import ChannelView
 from branchpos.scoring.error_model import (
     NOISE_OF_THRESHOLD,
+    OMISSION_FALL,
     SEEN_FLOOR,
     SHIFTED_SHARE,
     TEN,
@@ -211,5 +212,6 @@ def _by_ion(problem: _Problem, log_expected: FloatArray) -> FloatArray:
         shifted = log_density(z + TEN / problem.scale) + np.log(SHIFTED_SHARE)
         seen = np.where(view.doubtful, np.logaddexp(shifted, seen + np.log(1 - SHIFTED_SHARE)), seen)
     seen = np.logaddexp(seen - np.log(problem.scale), SEEN_FLOOR)
-    unseen = np.log(view.omission + (1 - view.omission) * np.exp(log_below(z)))
+    omission = view.omission * np.exp(OMISSION_FALL * np.minimum(problem.log_threshold - log_expected, 0.0))
+    unseen = np.log(omission + (1 - omission) * np.exp(log_below(z)))
     return np.where(view.recorded, np.where(view.seen, seen, unseen), 0.0)

@@ -1,7 +1,7 @@
 """From a spectrum to the chains worth a full look: enumerate, predict, screen.
 
 Few methyls are tried at every number of carbons; more methyls only where few already explain the spectrum to
-within a wide margin of the best, and better than none do, since every chain contains simpler ones that
+within a wide margin of the best, and each better than the last, since every chain contains simpler ones that
 explain part of it.
 """
 
@@ -30,7 +30,7 @@ FloatArray = NDArray[np.float64]
 _MARGINS = {2: 40.0, 3: 25.0}
 """Natural-log margin within which a number of carbons is looked at with 2, and with more methyls."""
 _LEAST_GAIN = 2.0
-"""Natural-log gain over the unbranched chain that one or two methyls must bring before more are tried."""
+"""Natural-log gain that the second methyl must bring over one or none before more are tried."""
 _FITTED_FOR_STANDING = 3
 _MOST_CHAINS = 150_000
 """Chains of one number of methyls that one look may try over all sizes; above, the likeliest sizes."""
@@ -77,11 +77,12 @@ class SizeGroup:
     unaffordable: list[int] = field(default_factory=list)
 
     def gains_from_methyls(self, methyls: int) -> bool:
-        """Tell whether one or two methyls explain more than none, so that further ones are worth a look."""
+        """Tell whether the last methyls that were added explain more, so that further ones are worth a look."""
         top = {one.batch.positions.shape[1]: float(one.scores.max()) for one in self.screened}
-        if methyls < max(_MARGINS) or 0 not in top or len(top) == 1:
+        if methyls < max(_MARGINS) or len(top) < max(_MARGINS):
             return True
-        return max(score for count, score in top.items() if count) > top[0] + _LEAST_GAIN
+        fewer = max(score for count, score in top.items() if count < max(_MARGINS) - 1)
+        return max(top.values()) > fewer + _LEAST_GAIN
 
 
 def choose_sizes(channels: MassChannels, method: Method, model: Model) -> list[tuple[EndGroup, int]]:

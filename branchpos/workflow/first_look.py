@@ -81,7 +81,7 @@ def _range_of(channels: MassChannels, end_group: EndGroup, carbons: range | None
     strong = np.flatnonzero(heights >= max(_STRONG_THRESHOLDS * channels.threshold, _STRONG))
     top = int(strong[-1]) if strong.size else channels.heaviest
     added = end_group.added.nominal_mass + 2
-    fewest, most = -(-(top - _BELOW_TOP - added) // 14), (top + _BEYOND_TOP - added) // 14
+    fewest, most = -(-(top - _BELOW_TOP - added) // 14), (channels.heaviest + _BEYOND_TOP - added) // 14
     return range(max(fewest, min(SMALLEST, 3)), min(most, LARGEST) + 1)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import re
 from collections.abc import Iterable
 from dataclasses import dataclass
 from pathlib import Path
@@ -10,10 +11,12 @@ from pathlib import Path
 from branchpos.chain import Chain
 from branchpos.end_group import END_GROUPS
 from branchpos.errors import FormatError, InputError
-from branchpos.reading import read_spectrum
+from branchpos.reading import read_file
 from branchpos.spectrum import Spectrum
 
 TRUTH_TABLE = "truth.csv"
+_TRIMETHYLSILYL = re.compile(r"\bTMS\b")
+"""In the title of a record, the mark of a trimethylsilyl derivative (MassBank usage)."""
 _COLUMNS = ("accession", "chain_class", "backbone_carbons", "methyl_positions")
 
 
@@ -45,27 +48,30 @@ def read_known_spectra(folder: Path, chain_classes: Iterable[str] = ("alkane",))
 
     The table has the columns accession, chain_class, backbone_carbons, methyl_positions (positions parted by
     spaces, empty for an unbranched chain) and optionally quality; the records lie in the folder or in its
-    folder ``chains`` as ``accession.txt``.
+    folder ``chains`` as ``accession.txt``. Rows of other classes, and records without peaks, are passed over.
 
     Raises
     ------
     InputError : the table is missing or lacks a column, or a record cannot be read.
     """
     wanted = set(chain_classes)
-    return [
-        KnownSpectrum(
-            row["accession"],
-            Chain(
-                int(row["backbone_carbons"]),
-                tuple(int(p) for p in row["methyl_positions"].split()),
-                END_GROUPS[row["chain_class"]],
-            ),
-            row.get("quality") or "ok",
-            read_spectrum(_record_path(folder, row["accession"])),
-        )
+    known = [
+        _known(row, reading.spectra[0])
         for row in _truth_rows(folder / TRUTH_TABLE)
-        if row["chain_class"] in wanted
+        if row["chain_class"] in END_GROUPS
+        and (reading := read_file(_record_path(folder, row["accession"]))).spectra
     ]
+    return [one for one in known if one.chain.end_group.name in wanted]
+
+
+def _known(row: dict[str, str], spectrum: Spectrum) -> KnownSpectrum:
+    """Join a row and its record; an acid recorded as its trimethylsilyl derivative is taken as the ester."""
+    chain_class = row["chain_class"]
+    if chain_class == "acid" and _TRIMETHYLSILYL.search(spectrum.title):
+        chain_class = "trimethylsilyl ester"
+    methyls = tuple(int(p) for p in row["methyl_positions"].split())
+    chain = Chain(int(row["backbone_carbons"]), methyls, END_GROUPS[chain_class])
+    return KnownSpectrum(row["accession"], chain, row.get("quality") or "ok", spectrum)
 
 
 def _truth_rows(path: Path) -> list[dict[str, str]]:
