@@ -14,7 +14,8 @@ from branchpos.mass_channels import MassChannels
 from branchpos.scoring.error_model import POOR, SOUND, ErrorModel, Quality
 from branchpos.scoring.likelihood import Fit, fit_batch
 from branchpos.scoring.remainder import Remainder, score_remainder
-from branchpos.workflow.candidates import SizeGroup
+from branchpos.scoring.screening import screen_batch
+from branchpos.workflow.candidates import Screened, SizeGroup
 from branchpos.workflow.model import Model
 
 FloatArray = NDArray[np.float64]
@@ -47,6 +48,14 @@ class Recording:
         """Score a batch on its own ions."""
         view = self.channels.for_class(batch.end_group).at(batch.masses)
         return fit_batch(view, batch, self._errors(batch.end_group))
+
+    def screen(self, screened: Screened) -> FloatArray:
+        """Return the approximate log likelihood of every chain of a batch on its own ions."""
+        if self.widening == 1:
+            return screened.scores
+        batch = screened.batch
+        view = self.channels.for_class(batch.end_group).at(batch.masses)
+        return screen_batch(view, batch, self._errors(batch.end_group))
 
     def remainder(self, batch: SeriesBatch, effects: FloatArray) -> Remainder:
         """Score the masses that are no ions of the batch."""

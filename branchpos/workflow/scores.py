@@ -78,16 +78,29 @@ def score_candidates(
     """Give the leading chains the full likelihood, and all chains prior and retention index."""
     pairs = [(group, screened) for group in groups for screened in group.screened]
     known = [_known_beforehand(screened, measured, method, model) for _, screened in pairs]
+    rests = {id(group): [_rest(one, group) for one in recordings] for group in groups}
     rough = [
-        screened.scores + _remainder(group).total + prior + retention
+        recordings[0].screen(screened) + rests[id(group)][0].total + prior + retention
         for (group, screened), (prior, retention, _) in zip(pairs, known, strict=True)
     ]
     lowest = _cut(np.concatenate(rough))
-    rests = {id(group): [_rest(one, group) for one in recordings] for group in groups}
-    return [
-        _scored(screened, np.flatnonzero(joint >= lowest), before, recordings, rests[id(group)])
+    scored = [
+        _scored(screened, joint, lowest, before, recordings, rests[id(group)])
         for (group, screened), joint, before in zip(pairs, rough, known, strict=True)
     ]
+    return _with_unfitted(scored, rough)
+
+
+def _with_unfitted(scored: list[ScoredBatch], rough: list[FloatArray]) -> list[ScoredBatch]:
+    """Give chains without the full likelihood their distance from the best by the screening."""
+    best = max(float(one.log_joint[one.fitted_rows].max(initial=-np.inf)) for one in scored)
+    best_rough = max(float(joint.max(initial=-np.inf)) for joint in rough)
+    completed = []
+    for one, joint in zip(scored, rough, strict=True):
+        likelihood = best + joint - best_rough - one.retention - one.log_prior
+        likelihood[one.fitted_rows] = one.log_likelihood[one.fitted_rows]
+        completed.append(replace(one, log_likelihood=likelihood))
+    return completed
 
 
 def _rest(recording: Recording, group: SizeGroup) -> Remainder:
@@ -134,23 +147,24 @@ def _family_gain(batch: SeriesBatch, method: Method) -> float:
 
 def _scored(
     screened: Screened,
-    rows: IntArray,
+    rough: FloatArray,
+    lowest: float,
     before: tuple[FloatArray, FloatArray, FloatArray],
     recordings: Sequence[Recording],
     rests: Sequence[Remainder],
 ) -> ScoredBatch:
+    """Give the rows at or above the cut the full likelihood, averaged over the readings of the quality."""
     prior, retention, z = before
+    rows = np.flatnonzero(rough >= lowest)
     leading = screened.batch.take(rows)
     fits = [recording.fit(leading) for recording in recordings]
-    likelihood = screened.scores + rests[0].total
-    if rows.size:
-        terms = [
+    likelihood = np.full(len(screened.batch), -np.inf)
+    likelihood[rows] = np.logaddexp.reduce(
+        [
             fit.log_likelihood + rest.total + recording.log_prior
             for fit, rest, recording in zip(fits, rests, recordings, strict=True)
         ]
-        full = np.logaddexp.reduce(terms)
-        likelihood = likelihood + float(np.median(full - likelihood[rows]))
-        likelihood[rows] = full
+    )
     return ScoredBatch(screened.batch, likelihood, retention, z, prior, rows, fits[0], rests[0])
 
 
