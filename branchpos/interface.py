@@ -23,7 +23,7 @@ Span = str | int | range
 def locate(
     spectrum: Spectrum,
     *,
-    chain: str | Sequence[str] = "alkane",
+    chain: str | Sequence[str] | None = None,
     retention_index: RetentionIndex | None = None,
     carbons: Span | None = None,
     methyls: Span = "0-4",
@@ -37,7 +37,7 @@ def locate(
     Parameters
     ----------
     spectrum : an electron ionisation spectrum, as ``read_spectrum`` gives it.
-    chain : chain classes to consider, as text with commas or one by one.
+    chain : chain classes to consider, as text with commas or one by one; all when not given.
     retention_index : the measured index with its standard deviation [units].
     carbons, methyls : what to consider; carbons as the spectrum allows when not given.
     formula : molecular formula, if known; overrules ``carbons``.
@@ -57,7 +57,7 @@ def locate(
     16
     """
     method = Method(
-        chain=tuple(name.strip() for name in chain.split(",")) if isinstance(chain, str) else tuple(chain),
+        chain=Method().chain if chain is None else _classes(chain),
         carbons=None if carbons is None else _span(carbons, "carbons"),
         methyls=_span(methyls, "methyls"),
         formula=formula,
@@ -83,7 +83,7 @@ def predict(chain: Chain | str, *, least: float = LEAST) -> Prediction:
 
     >>> import branchpos as bp
     >>> round(bp.predict("2-MeC26").retention_index.value)
-    2664
+    2662
     """
     return predict_chain(parse_chain(chain) if isinstance(chain, str) else chain, least=least)
 
@@ -106,6 +106,10 @@ def isomers(carbons: int, methyls: Span, *, chain: str = "alkane") -> Iterator[I
     12
     """
     return list_isomers(carbons, _span(methyls, "methyls"), chain)
+
+
+def _classes(chain: str | Sequence[str]) -> tuple[str, ...]:
+    return tuple(name.strip() for name in chain.split(",")) if isinstance(chain, str) else tuple(chain)
 
 
 def _span(given: Span, name: str) -> range:

@@ -76,7 +76,7 @@ def method_options(command: Command) -> Command:
         return command(*args, asked=asked, **others)
 
     options = (
-        click.option("--chain", metavar="CLASS[,CLASS]", help="Chain classes to consider [alkane]."),
+        click.option("--chain", metavar="CLASS[,CLASS]", help="Chain classes to consider [all]."),
         click.option("--carbons", metavar="N or N-M", help="Carbons, branches included [as the data allow]."),
         click.option("--methyls", metavar="N or N-M", help="Numbers of methyl branches [0-4]."),
         click.option("--formula", metavar="FORMULA", help="Molecular formula; overrules --carbons."),

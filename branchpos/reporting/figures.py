@@ -29,7 +29,7 @@ __all__ = [
 ]
 
 _WIDTH = 10.5
-_HEAD, _SERIES, _STICKS, _FOOT = 0.75, 4.4, 1.5, 0.55
+_HEAD, _SERIES, _GAP, _STICKS, _FOOT = 0.75, 4.4, 0.6, 1.5, 0.55
 """Heights of the parts [inches]."""
 _LEFT, _RIGHT = 0.075, 0.985
 _STYLE: Any = {
@@ -69,28 +69,33 @@ def save_figure(figure: Figure, path: Path) -> None:
 
 
 def _figure(picture: Picture, spectrum: Spectrum | None) -> Figure:
+    """Stack chains, ion series and stick spectrum; without evidence for any chain, the spectrum alone."""
     from matplotlib import rc_context
     from matplotlib.figure import Figure
 
     chains = [chain_height(layer.chain, picture.named) for layer in picture.layers]
-    heights = [*chains, _SERIES] + ([_STICKS] if spectrum is not None else [])
-    total = _HEAD + sum(heights) + _FOOT + 0.75 * (spectrum is not None)
+    below = [_SERIES] * bool(chains) + [_STICKS + _GAP] * (spectrum is not None)
+    total = _HEAD + sum(chains) + sum(below) + _FOOT
+    mz_range = None
     with rc_context(_STYLE):
         figure = Figure(figsize=(_WIDTH, total), facecolor=palette.PAPER)
         _write_head(figure, picture, total)
         top = total - _HEAD
-        for number, layer in enumerate(picture.layers):
-            chain = _part(figure, top, chains[number], total)
-            draw_chain(chain, layer.chain, picture.named, layer.label)
-            if len(picture.layers) > 1:
+        for number, (layer, height) in enumerate(zip(picture.layers, chains, strict=True)):
+            draw_chain(_part(figure, top, height, total), layer.chain, picture.named, layer.label)
+            if len(chains) > 1:
                 _draw_swatch(figure, top / total, 0.11 / total, second=number == 1)
-            top -= chains[number]
-        series = _part(figure, top - 0.3, _SERIES - 0.3, total)
-        draw_ion_series(series, picture)
-        _write_legend(figure, series, picture, top / total)
+            top -= height
+        if chains:
+            series = _part(figure, top - 0.3, _SERIES - 0.3, total)
+            draw_ion_series(series, picture)
+            _write_legend(figure, series, picture, top / total)
+            mz_range = _mz_range(series, picture)
+            top -= _SERIES
         if spectrum is not None:
-            sticks = _part(figure, top - _SERIES - 0.6, _STICKS, total)
-            draw_spectrum(sticks, spectrum, _mz_range(series, picture), _named_masses(picture))
+            draw_spectrum(
+                _part(figure, top - _GAP, _STICKS, total), spectrum, mz_range, _named_masses(picture)
+            )
     return figure
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from typing import TYPE_CHECKING, Any
 
 if TYPE_CHECKING:
@@ -14,7 +14,8 @@ Box = tuple[float, float, float, float]
 
 _GAP = 2.0
 """Clearance around a label [points]."""
-_LINE = {"arrowstyle": "-", "lw": 0.6, "shrinkA": 0, "shrinkB": 3}
+_ALONG = [share / 12 for share in range(12)]
+_LINE: dict[str, Any] = {"arrowstyle": "-", "lw": 0.6, "shrinkA": 0, "shrinkB": 3}
 _RISE = 7.0
 """Distance between the heights that are tried [points]."""
 
@@ -45,9 +46,9 @@ class LabelPlacer:
         if spot is None:
             return None
         shift, rise, box, leader = spot
-        self._taken += [box, leader]
-        self._labels += [box]
-        self._leaders += [leader]
+        self._taken += [box, *leader]
+        self._labels.append(box)
+        self._leaders += leader
         return self._axes.annotate(
             text,
             (x, y),
@@ -55,25 +56,19 @@ class LabelPlacer:
             textcoords="offset points",
             ha="center",
             va="bottom",
-            arrowprops={
-                "arrowstyle": "-",
-                "lw": 0.6,
-                "color": style.get("color"),
-                "shrinkA": 0,
-                "shrinkB": 3,
-            },
+            arrowprops={**_LINE, "color": style.get("color")},
             **style,
         )
 
     def _free_spot(
         self, x: float, y: float, width: float, height: float
-    ) -> tuple[float, float, Box, Box] | None:
+    ) -> tuple[float, float, Box, list[Box]] | None:
         """Return offset [points] and the boxes [pixels] of label and line."""
         for obstacles in (self._taken, [*self._labels, *self._leaders]):
             for shift, rise in self._offsets(width):
                 box = self._box(x, y, shift, rise, width, height)
                 leader = self._leader(x, y, box)
-                if self._inside(box) and not _meets(box, obstacles) and not _meets(leader, self._labels):
+                if self._inside(box) and not _meets(box, obstacles) and not _crosses(leader, self._labels):
                     return shift, rise, box, leader
         return None
 
@@ -96,11 +91,12 @@ class LabelPlacer:
         gap = self._points(_GAP)
         return (centre - width / 2 - gap, bottom - gap, centre + width / 2 + gap, bottom + height + gap)
 
-    def _leader(self, x: float, y: float, label: Box) -> Box:
-        """Return the room that the line from a point up to its label takes."""
+    def _leader(self, x: float, y: float, label: Box) -> list[Box]:
+        """Return the line from a point up to its label as a row of small boxes."""
         foot, bottom = self._pixels(x, y)
-        middle = (label[0] + label[2]) / 2
-        return (min(foot, middle) - 1, bottom, max(foot, middle) + 1, label[1])
+        across, up = (label[0] + label[2]) / 2 - foot, label[1] - bottom
+        steps = [(foot + share * across, bottom + share * up) for share in _ALONG]
+        return [(at - 1, height - 1, at + 1, height + 1) for at, height in steps]
 
     def _inside(self, box: Box) -> bool:
         frame = self._axes.get_window_extent()
@@ -116,6 +112,10 @@ class LabelPlacer:
     @property
     def _dpi(self) -> float:
         return float(self._axes.figure.get_dpi())
+
+
+def _crosses(line: Iterable[Box], others: Sequence[Box]) -> bool:
+    return any(_meets(part, others) for part in line)
 
 
 def _meets(one: Box, others: Iterable[Box]) -> bool:
