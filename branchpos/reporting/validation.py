@@ -151,11 +151,12 @@ def _yardstick_section(yardsticks: Record) -> str:
             one["nearest_right"],
             one["ion_count_right"],
             f"{one['mean_ion_count_rank']:.1f} of {one['mean_candidates']:.0f}",
+            f"{one['mean_rank_among_alike']:.1f} of {one['mean_alike']:.0f}",
         )
         for kind, one in yardsticks.items()
     ]
     heads = ("records", "number", "branchpos right first", "nearest spectrum right", "ion count right",
-             "mean rank by ion count")  # fmt: skip
+             "mean rank by ion count", "the same, told the number of methyls")  # fmt: skip
     return "\n".join(
         [
             "## Against two simple yardsticks",

@@ -123,7 +123,7 @@ def _record_entry(score: RecordScore) -> Record:
         "index_source": score.index_source,
         "with_index": None if score.indexed is None else _truth_entry(score.indexed),
         "nearest": None if score.nearest is None else asdict(score.nearest),
-        "ion_count": {**asdict(score.ion_count), "rank": score.ion_count.rank},
+        "ion_count": asdict(score.ion_count),
     }
 
 
@@ -265,6 +265,8 @@ def yardsticks(scores: Sequence[RecordScore]) -> Record:
             "ion_count_right": _count(members, lambda s: s.ion_count.rank == 1),
             "mean_ion_count_rank": fmean(s.ion_count.rank for s in members),
             "mean_candidates": fmean(s.ion_count.candidates for s in members),
+            "mean_rank_among_alike": fmean(s.ion_count.rank_among_alike for s in members),
+            "mean_alike": fmean(s.ion_count.alike for s in members),
         }
         for kind, members in (("unbranched", straight), ("branched", branched))
         if members

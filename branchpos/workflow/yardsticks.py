@@ -10,7 +10,7 @@ from numpy.typing import NDArray
 
 from branchpos.chain import Chain
 from branchpos.cleaning.nominal import to_channels
-from branchpos.enumerating import alkane_positions
+from branchpos.enumerating import alkane_positions, count_alkanes
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.predicting.alkanes import predict_alkanes
@@ -39,18 +39,14 @@ class IonCount:
 
     Attributes
     ----------
-    better, tied : chains with more, and with as many; the truth is among the tied.
-    candidates : chains ranked.
+    rank, candidates : rank of the truth, ties at their middle, and how many chains were ranked.
+    rank_among_alike, alike : the same among the chains with as many methyls as the truth.
     """
 
-    better: int
-    tied: int
+    rank: float
     candidates: int
-
-    @property
-    def rank(self) -> float:
-        """Rank of the truth, ties at their middle."""
-        return self.better + (self.tied + 1) / 2
+    rank_among_alike: float
+    alike: int
 
 
 def nearest_spectrum(one: KnownSpectrum, known: Sequence[KnownSpectrum]) -> Nearest | None:
@@ -75,22 +71,25 @@ def same_branching(one: Chain, other: Chain) -> bool:
 def count_ions(one: KnownSpectrum, model: Model) -> IonCount:
     """Rank the chains with the carbons of the truth by how many branch-steered ions are present."""
     channels, _ = to_channels(one.spectrum)
-    scores, truth = [], -1
-    for batch in _batches(one.chain, model):
-        counts = _present(channels, batch)
-        if batch.backbone == one.chain.backbone:
-            truth = int(counts[_row_of(batch, one.chain)])
-        scores.append(counts)
-    merged = np.concatenate(scores)
-    return IonCount(int((merged > truth).sum()), int((merged == truth).sum()), merged.size)
+    alike = _batch(one.chain.backbone, len(one.chain.methyls), model)
+    counts = _present(channels, alike)
+    truth = int(counts[_row_of(alike, one.chain)])
+    others = [
+        _present(channels, _batch(one.chain.carbons - methyls, methyls, model))
+        for methyls in range(_MOST_METHYLS + 1)
+        if methyls != len(one.chain.methyls) and count_alkanes(one.chain.carbons - methyls, methyls)
+    ]
+    everything = np.concatenate([counts, *others])
+    return IonCount(_rank(truth, everything), everything.size, _rank(truth, counts), counts.size)
 
 
-def _batches(chain: Chain, model: Model) -> list[SeriesBatch]:
-    every = [(chain.carbons - k, alkane_positions(chain.carbons - k, k)) for k in range(_MOST_METHYLS + 1)]
-    if len(chain.methyls) > _MOST_METHYLS:
-        # Too many methyls to enumerate: the truth alone stands for its kind, which favours this yardstick.
-        every.append((chain.backbone, np.array([chain.methyls], dtype=np.int16)))
-    return [predict_alkanes(model.yields, backbone, rows) for backbone, rows in every if len(rows)]
+def _batch(backbone: int, methyls: int, model: Model) -> SeriesBatch:
+    return predict_alkanes(model.yields, backbone, alkane_positions(backbone, methyls))
+
+
+def _rank(truth: int, counts: NDArray[np.intp]) -> float:
+    """Return the rank of a count, ties at their middle."""
+    return float((counts > truth).sum() + ((counts == truth).sum() + 1) / 2)
 
 
 def _present(channels: MassChannels, batch: SeriesBatch) -> NDArray[np.intp]:
