@@ -18,6 +18,7 @@ _MASS_DEFECT = 6e-4
 """Taken off each m/z before rounding; midway between hydrocarbons (1.1e-3) and siloxanes (2e-4)."""
 _FORMULA_TOLERANCE = 0.015
 """Largest error [Th] of an accurate mass; C6H13 and C5H9O lie 0.036 apart."""
+_ENOUGH_PEAKS, _SLIPPED_SHARE, _HIGHEST_THRESHOLD = 20, 0.1, 0.5
 _FEWEST_PEAKS = 15
 """A list shorter than this was picked by hand or cut hard; what it leaves out says little."""
 _OMISSION_SHORT, _OMISSION = 0.15, 0.002
@@ -43,7 +44,9 @@ def to_channels(spectrum: Spectrum) -> tuple[MassChannels, tuple[str, ...]]:
     foreign_peak = _is_foreign(spectrum, masses)
     if foreign_peak.any():
         listed = ", ".join(f"{mz:.3f}" for mz in spectrum.mz[foreign_peak][:5])
-        notes.append(f"{int(foreign_peak.sum())} peaks are no hydrocarbon ions by accurate mass: {listed}")
+        notes.append(
+            f"no hydrocarbon ion by accurate mass: m/z {listed}{' ...' if foreign_peak.sum() > 5 else ''}"
+        )
     short = spectrum.mz.size < _FEWEST_PEAKS
     if short:
         notes.append(f"only {spectrum.mz.size} peaks: an absent peak is given little weight")
@@ -60,12 +63,25 @@ def to_channels(spectrum: Spectrum) -> tuple[MassChannels, tuple[str, ...]]:
         foreign=np.asarray(
             np.bincount(masses[foreign_peak], weights=relative[foreign_peak], minlength=size), dtype=float
         ),
-        threshold=min(spectrum.relative_threshold, 0.5),
+        threshold=working_threshold(spectrum),
         first=int(np.ceil(spectrum.first_mass - 0.5)),
         last=spectrum.last_mass,
         omission=_OMISSION_SHORT if short else _OMISSION,
     )
     return channels, tuple(notes)
+
+
+def working_threshold(spectrum: Spectrum) -> float:
+    """Return the relative height from which a peak would surely have been listed.
+
+    The smallest listed peak stands lower where decimals slipped; the lowest tenth of the peaks is left out,
+    so that a few slipped ones do not make every absent peak look like evidence.
+    """
+    relative = spectrum.relative
+    if relative.size < _ENOUGH_PEAKS:
+        return min(spectrum.relative_threshold, _HIGHEST_THRESHOLD)
+    lowest = float(np.quantile(relative, _SLIPPED_SHARE))
+    return min(max(spectrum.relative_threshold, lowest), _HIGHEST_THRESHOLD)
 
 
 def whole_masses(mz: FloatArray) -> IntArray:

@@ -28,6 +28,8 @@ TAIL = 6
 POOL_SIZES = range(3, 9)
 POOL_RESIDUES = (1, 0, -1, -2, -3)
 """Low hydrocarbon ions, CnH2n+1 to CnH2n-3, alike for all isomers."""
+_ALPHA = 2
+"""Carbon beside the functional group, whose methyl stays in the McLafferty ion and favours it."""
 _USUAL_LENGTH = 14
 """Backbone carbons at which the tables are quoted; each family grows or falls by a rate from there."""
 _CARBON_13 = 0.0108
@@ -109,6 +111,8 @@ def entries(rules: ClassRules) -> tuple[Entry, ...]:
         Entry("molecular_branch", -0.3, 0.3),
         Entry("steer_site", 0.6, 0.4),
         Entry("steer_radical", 0.8, 0.4),
+        Entry("steer_quaternary", 2.0, 0.7),
+        Entry("alpha_methyl", 0.8, 0.5),
         Entry("gap", -1.5, 0.5),
     ]
     for family in rules.families:
@@ -189,12 +193,15 @@ def _family_columns(
     """Return one column for each size of a family's ion."""
     level = _bond_levels(family, named, backbone)
     inside = np.cumsum(on_carbon, axis=1)[:, 1:backbone]
-    left, right = np.minimum(on_carbon[:, 1:backbone], 1), np.minimum(on_carbon[:, 2 : backbone + 1], 1)
+    left, right = on_carbon[:, 1:backbone], on_carbon[:, 2 : backbone + 1]
     left_size = np.arange(1, backbone) + inside
     own, other, size = (
         (right, left, carbons - left_size) if family.keeps is Keeps.TAIL else (left, right, left_size)
     )
-    push = named["steer_site"] * own + named["steer_radical"] * other
+    push = named["steer_site"] * (own > 0) + named["steer_radical"] * (other > 0)
+    push += named["steer_quaternary"] * ((own == 2) | (other == 2))
+    if family.kind is IonKind.REARRANGED and family.keeps is Keeps.HEAD and backbone > _ALPHA:
+        push[:, _ALPHA - 1] += named["alpha_methyl"] * (on_carbon[:, _ALPHA] > 0)
     plain = np.exp(level)[None, :] * np.ones_like(push)
     abundance = np.zeros((len(on_carbon), carbons + 1))
     steered = np.zeros_like(abundance)
@@ -204,7 +211,7 @@ def _family_columns(
     missing = abundance[:, 2:-1] == 0
     abundance[:, 2:-1] += missing * np.exp(named["gap"]) * abundance[:, 1:-2]
     return [
-        _Column(_mass(family, end_group, s), s, family.kind, abundance[:, s], steered[:, s])
+        _Column(mass_of(family, end_group, s), s, family.kind, abundance[:, s], steered[:, s])
         for s in range(family.smallest, carbons)
     ]
 
@@ -223,7 +230,7 @@ def _bond_levels(family: Family, named: Mapping[str, float], backbone: int) -> F
     return np.asarray(level + length + corrections[np.minimum(other_end, TAIL + 1) - 1])
 
 
-def _mass(family: Family, end_group: EndGroup, size: int) -> int:
+def mass_of(family: Family, end_group: EndGroup, size: int) -> int:
     """Return the mass number of a family's ion of so many skeleton carbons."""
     if family.keeps is Keeps.HEAD:
         return 14 * size + 1 + end_group.added.nominal_mass + family.hydrogens

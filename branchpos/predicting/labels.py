@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 from branchpos.chain import Chain
+from branchpos.end_group import ALKANE
+from branchpos.predicting.headed_labels import headed_labels
 
 _SITES = ("primary", "secondary", "tertiary")
 _MOST_NAMED = 3
@@ -34,6 +36,20 @@ def _joined(routes: list[tuple[int, str]]) -> str:
     best = [text for degree, text in routes if degree == routes[0][0]]
     rest = f" and {len(best) - _MOST_NAMED} more" if len(best) > _MOST_NAMED else ""
     return "; ".join(best[:_MOST_NAMED]) + rest
+
+
+def mass_labels(chain: Chain) -> dict[int, str]:
+    """Return, by mass number, the words for every ion of a chain of any class.
+
+    >>> mass_labels(Chain(25, (5, 11)))[84]
+    'C5|C6, charge on C5 (secondary), with hydrogen transfer'
+    """
+    if chain.end_group != ALKANE:
+        return headed_labels(chain)
+    labels = cleavage_labels(chain)
+    masses = [mass for size in range(1, chain.carbons) for mass in (14 * size, 14 * size + 1)]
+    named = {mass: ion_label(chain, mass // 14, mass, labels) for mass in masses}
+    return named | {14 * chain.carbons + 2: "molecular ion"}
 
 
 def ion_label(chain: Chain, size: int, mass: int, labels: dict[int, str]) -> str:

@@ -16,6 +16,7 @@ from numpy.typing import NDArray
 from branchpos.end_group import ALKANE, END_GROUPS, EndGroup
 from branchpos.enumerating import count_chains, regular_isoprenoids
 from branchpos.enumerating.sizes import plausible_carbons
+from branchpos.errors import SettingsError
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.scoring.likelihood import fit_batch
@@ -77,7 +78,7 @@ class SizeGroup:
     unaffordable: list[int] = field(default_factory=list)
 
     def gains_from_methyls(self, methyls: int) -> bool:
-        """Tell whether the last methyls that were added explain more, so that further ones are worth a look."""
+        """Tell whether the last methyls added explain more, so that further ones are worth a look."""
         top = {one.batch.positions.shape[1]: float(one.scores.max()) for one in self.screened}
         if methyls < max(_MARGINS) or len(top) < max(_MARGINS):
             return True
@@ -105,9 +106,17 @@ def screen_candidates(
     -------
     one group a class and number of carbons; those that fell behind hold few methyls only.
     """
-    groups = [SizeGroup(end_group, carbons) for end_group, carbons in sizes]
+    groups = [
+        SizeGroup(end_group, carbons)
+        for end_group, carbons in sizes
+        if _has_chains(end_group, carbons, method)
+    ]
+    if not groups:
+        raise SettingsError(
+            "no chain has the carbons and methyls asked for", remedy="ask for more carbons or fewer methyls"
+        )
     heaviest = heaviest_mass(sizes)
-    few = [k for k in method.methyls if k < min(_MARGINS)] or [method.methyls[0]]
+    few = [k for k in method.methyls if k < min(_MARGINS)] or list(method.methyls)
     _extend(groups, few, channels, heaviest, model)
     for methyls in sorted(set(method.methyls) - set(few)):
         margin = _MARGINS[min(methyls, max(_MARGINS))]
@@ -118,6 +127,10 @@ def screen_candidates(
             if group.end_group == ALKANE and group.gains_from_methyls(method.methyls[-1]):
                 _add_isoprenoids(group, method, channels, heaviest, model)
     return [group for group in groups if group.screened]
+
+
+def _has_chains(end_group: EndGroup, carbons: int, method: Method) -> bool:
+    return any(count_chains(carbons, methyls, end_group) for methyls in method.methyls)
 
 
 def left_out(groups: Iterable[SizeGroup]) -> tuple[str, ...]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 from functools import cache, lru_cache
 from types import MappingProxyType
 
@@ -64,21 +64,23 @@ class Model:
     ----------
     yields, errors : the cleavage model of alkanes and its errors.
     retention : parameters of the retention index of alkanes.
-    headed : models of the classes with an end group, by name.
+    headed : models of the classes with an end group, by name; None stands for the shipped ones, which are
+        read only when one is asked for.
     """
 
     yields: YieldParameters
     errors: ErrorModel
     retention: RetentionParameters
-    headed: Mapping[str, ClassModel] = field(default_factory=lambda: _headed())
+    headed: Mapping[str, ClassModel] | None = None
 
     def of(self, end_group: EndGroup) -> ClassModel:
         """Return the model of one class (``ReferenceDataError`` where none was fitted)."""
         if end_group == ALKANE:
             return _alkane_model(self)
-        if end_group.name not in self.headed:
+        headed = shipped_headed() if self.headed is None else self.headed
+        if end_group.name not in headed:
             raise ReferenceDataError(f"no model of the class {end_group.name!r}; run `branchpos refit`")
-        return self.headed[end_group.name]
+        return headed[end_group.name]
 
 
 @lru_cache(maxsize=64)
@@ -89,11 +91,7 @@ def _alkane_model(model: Model) -> ClassModel:
 @cache
 def shipped_model() -> Model:
     """Return the model that comes with the program (``ReferenceDataError`` where a set is missing)."""
-    return Model(fitted_parameters(), fitted_errors(), shipped_parameters(), shipped_headed())
-
-
-def _headed() -> Mapping[str, ClassModel]:
-    return shipped_headed()
+    return Model(fitted_parameters(), fitted_errors(), shipped_parameters())
 
 
 @cache

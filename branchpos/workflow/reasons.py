@@ -30,6 +30,8 @@ def reasons(call: Call, ranked: Sequence[RankedHypothesis], none_of_these: float
 
 def _size_line(best: RankedHypothesis) -> str:
     mass = best.chain.formula.nominal_mass
+    if not best.ions:
+        return "no structure explains the spectrum well enough to weigh its ions"
     molecular = next((ion for ion in best.ions if ion.mz == mass), None)
     if molecular is None:
         return f"the molecular ion m/z {mass} lies outside the recorded range"

@@ -27,7 +27,7 @@ def has_retention_model(end_group: EndGroup) -> bool:
 def predict_index(
     positions: NDArray[np.int16], backbone: int, end_group: EndGroup, model: Model
 ) -> tuple[FloatArray, FloatArray]:
-    """Return predicted indices on the n-alkane scale and their standard deviations [units], (chains,) each."""
+    """Return predicted indices on the n-alkane scale and their standard deviations [units]."""
     rows = positions.astype(np.intp)
     if end_group == ALKANE:
         return predict_retention(rows, backbone, model.retention)

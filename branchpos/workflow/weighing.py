@@ -12,7 +12,7 @@ from branchpos.chain import Chain
 from branchpos.deciding.posterior import Posterior
 from branchpos.evidence import IonEvidence, Shares
 from branchpos.mass_channels import MassChannels
-from branchpos.predicting.labels import cleavage_labels, ion_label
+from branchpos.predicting.labels import mass_labels
 from branchpos.verdict import RankedHypothesis
 from branchpos.workflow.scores import ScoredBatch
 
@@ -78,7 +78,7 @@ def _account(one: ScoredBatch, row: int) -> _Account | None:
         return None
     by_mass = dict(zip(one.remainder.masses.tolist(), one.remainder.by_mass.tolist(), strict=True))
     by_mass |= dict(zip(one.batch.masses.tolist(), one.fit.by_ion[at].tolist(), strict=True))
-    terms = float(one.fit.log_likelihood[at] - one.fit.by_ion[at].sum())
+    terms = float(one.log_likelihood[row]) - sum(by_mass.values())
     return _Account(by_mass, terms, float(one.retention[row]), float(one.log_prior[row]))
 
 
@@ -107,7 +107,7 @@ def _ions(
 ) -> tuple[IonEvidence, ...]:
     expected = one.fit.expected[int(np.searchsorted(one.fitted_rows, row))]
     view = channels.at(one.batch.masses)
-    labels = cleavage_labels(chain)
+    labels = mass_labels(chain)
     return tuple(
         IonEvidence(
             mz=mass,
@@ -115,7 +115,7 @@ def _ions(
             observed=float(view.intensity[column]) if view.seen[column] else None,
             expected=float(expected[column]),
             threshold=channels.threshold,
-            cleavage=ion_label(chain, int(one.batch.carbons[column]), mass, labels),
+            cleavage=labels.get(mass, "neighbour of stronger ions"),
             weight_of_evidence=(account.by_mass[mass] - other.by_mass.get(mass, 0.0)) * _BITS,
         )
         for mass, column in sorted((int(m), i) for i, m in enumerate(one.batch.masses))

@@ -28,4 +28,4 @@ def alkene(*start: float) -> Family:
 
 def alkyl(*start: float) -> Family:
     """Return the alkyl part."""
-    return Family("alkyl", Keeps.TAIL, 0, IonKind.FRAGMENT, start, smallest=9)
+    return Family("alkyl", Keeps.TAIL, 0, IonKind.FRAGMENT, start, smallest=4)
