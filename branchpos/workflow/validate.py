@@ -15,7 +15,8 @@ from branchpos.predicting.retention_fit import (
     fit_retention,
     read_index_rows,
 )
-from branchpos.reporting.validation import draw_validation, validation_text
+from branchpos.reporting.validation import validation_text
+from branchpos.reporting.validation_figure import draw_validation
 from branchpos.workflow.false_claims import other_records, score_others
 from branchpos.workflow.held_out import settle, shipped_start, usable
 from branchpos.workflow.known_scores import IndexKnowledge, compare_starts, score_compound
