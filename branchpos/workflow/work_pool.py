@@ -48,10 +48,11 @@ def open_pool(workers: int | None) -> Iterator[Executor]:
 
 
 def count_done(futures: list[Future[Any]], tell: Callable[[int, int], None]) -> None:
-    """Tell how many are done of how many, as they finish."""
+    """Tell how many are done of how many, as they finish; the first fault is raised at once."""
     from concurrent.futures import as_completed
 
-    for done, _ in enumerate(as_completed(futures), start=1):
+    for done, future in enumerate(as_completed(futures), start=1):
+        future.result()
         tell(done, len(futures))
 
 
