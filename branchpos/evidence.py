@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+from branchpos.ion_series import IonKind
+
 
 @dataclass(frozen=True, slots=True)
 class IonEvidence:
@@ -17,6 +19,7 @@ class IonEvidence:
     expected : the same as the hypothesis predicts it on this instrument.
     threshold : detection threshold, same unit.
     cleavage : in words, the bonds whose cleavage gives the ion.
+    kind : how the ion comes about.
     weight_of_evidence : bits for the first hypothesis against the best other; for the others, bits against
         the first.
     """
@@ -27,6 +30,7 @@ class IonEvidence:
     expected: float
     threshold: float
     cleavage: str
+    kind: IonKind
     weight_of_evidence: float
 
 

@@ -10,6 +10,7 @@ from numpy.typing import NDArray
 
 from branchpos.chain import Chain
 from branchpos.end_group import EndGroup
+from branchpos.masses import Formula
 
 
 class IonKind(IntEnum):
@@ -31,8 +32,9 @@ class Ion:
     Attributes
     ----------
     mz : whole mass number.
-    exact_mz : m/z of the light isotopologue [Th].
-    carbons, hydrogens : composition of the hydrocarbon ion.
+    exact_mz : m/z of the light isotopologue [Th], None where the composition is not known.
+    carbons : size of the ion in skeleton carbons.
+    composition : elements of the ion, None where not known.
     kind : how it comes about.
     expected, low, high : abundance relative to the base peak and its 95 % interval.
     steered : share that comes from cleavage beside a branch, 0 to 1.
@@ -40,9 +42,9 @@ class Ion:
     """
 
     mz: int
-    exact_mz: float
+    exact_mz: float | None
     carbons: int
-    hydrogens: int
+    composition: Formula | None
     kind: IonKind
     expected: float
     low: float

@@ -18,6 +18,7 @@ from numpy.typing import NDArray
 
 from branchpos.end_group import EndGroup
 from branchpos.ion_series import IonKind, SeriesBatch
+from branchpos.masses import Formula
 
 FloatArray = NDArray[np.float64]
 
@@ -230,13 +231,25 @@ def _bond_levels(family: Family, named: Mapping[str, float], backbone: int) -> F
     return np.asarray(level + length + corrections[np.minimum(other_end, TAIL + 1) - 1])
 
 
+def composition_of(family: Family, end_group: EndGroup, size: int) -> Formula:
+    """Return the composition of a family's ion of so many skeleton carbons.
+
+    >>> from branchpos.end_group import END_GROUPS
+    >>> from branchpos.predicting.classes.families import rearranged_head
+    >>> str(composition_of(rearranged_head(0.0), END_GROUPS["methyl ester"], 2))
+    'C3H6O2'
+    """
+    if family.keeps is Keeps.HEAD:
+        return Formula(size, 2 * size + 1 + family.hydrogens) + end_group.added
+    if family.keeps is Keeps.HEAD_WITHOUT:
+        return Formula(size, 2 * size - 1 + family.hydrogens)
+    return Formula(size, 2 * size + 1 - family.hydrogens)
+
+
+@lru_cache(maxsize=4096)
 def mass_of(family: Family, end_group: EndGroup, size: int) -> int:
     """Return the mass number of a family's ion of so many skeleton carbons."""
-    if family.keeps is Keeps.HEAD:
-        return 14 * size + 1 + end_group.added.nominal_mass + family.hydrogens
-    if family.keeps is Keeps.HEAD_WITHOUT:
-        return 14 * size - 1 + family.hydrogens
-    return 14 * size + 1 - family.hydrogens
+    return composition_of(family, end_group, size).nominal_mass
 
 
 def _shared_columns(

@@ -8,6 +8,8 @@ from branchpos.predicting.headed_labels import headed_labels
 
 _SITES = ("primary", "secondary", "tertiary")
 _MOST_NAMED = 3
+NEIGHBOUR = "neighbour of stronger ions"
+"""Route of an ion that no cleavage gives: isotopes and stray losses."""
 
 
 def cleavage_labels(chain: Chain) -> dict[int, str]:

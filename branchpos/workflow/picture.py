@@ -34,12 +34,12 @@ def picture_of(spectrum: Spectrum, verdict: Verdict, model: Model | None = None)
     verdict : the verdict on it.
     model : the model whose error scales give the expected ranges; the shipped one when not given.
     """
-    errors = (model or shipped_model()).errors
+    chosen = model or shipped_model()
     leading = [one for one in verdict.hypotheses[:2] if one.ions]
     return Picture(
         title=spectrum.title or spectrum.source,
         headline=f"{verdict.call}  ({verdict.status.value})",
-        layers=tuple(_layer(one, errors) for one in leading),
+        layers=tuple(_layer(one, chosen.of(one.chain.end_group).errors) for one in leading),
         named=_deciding(leading[0].ions) if leading else (),
         threshold=spectrum.relative_threshold,
     )
@@ -52,7 +52,7 @@ def picture_of_prediction(prediction: Prediction, model: Model | None = None) ->
     prediction itself would hide what the branches do.
     """
     chain, ions = prediction.chain, prediction.series.ions
-    errors = (model or shipped_model()).errors
+    errors = (model or shipped_model()).of(chain.end_group).errors
     index = prediction.retention_index
     known = str(chain.formula) if index is None else f"{chain.formula}, retention index {index.value:.0f}"
     shown = tuple(_within(ion.mz, ion.carbons, ion.expected, ion.kind, errors) for ion in ions)
@@ -65,19 +65,16 @@ def picture_of_prediction(prediction: Prediction, model: Model | None = None) ->
 
 
 def _layer(one: RankedHypothesis, errors: ErrorModel) -> Layer:
-    molecular = one.chain.formula.nominal_mass
     return Layer(
         chain=one.chain,
         label=f"{one.name}  {probability_text(one.posterior)}",
-        ions=tuple(_shown(ion, ion.mz == molecular, errors) for ion in one.ions),
+        ions=tuple(_shown(ion, errors) for ion in one.ions),
     )
 
 
-def _shown(ion: IonEvidence, is_molecular: bool, errors: ErrorModel) -> ShownIon:
+def _shown(ion: IonEvidence, errors: ErrorModel) -> ShownIon:
     """Widen an expected abundance, on this instrument, by the error of its kind."""
-    fragment = IonKind.FRAGMENT if ion.mz % 2 else IonKind.REARRANGED
-    kind = IonKind.MOLECULAR if is_molecular else fragment
-    return replace(_within(ion.mz, ion.carbons, ion.expected, kind, errors), observed=ion.observed)
+    return replace(_within(ion.mz, ion.carbons, ion.expected, ion.kind, errors), observed=ion.observed)
 
 
 def _within(mz: int, carbons: int, expected: float, kind: IonKind, errors: ErrorModel) -> ShownIon:

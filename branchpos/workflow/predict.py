@@ -9,18 +9,18 @@ import numpy as np
 from numpy.typing import NDArray
 
 from branchpos.chain import Chain
+from branchpos.end_group import ALKANE
 from branchpos.errors import SettingsError
 from branchpos.ion_series import Ion, IonKind, IonSeries, SeriesBatch
 from branchpos.masses import Formula
-from branchpos.predicting.alkanes import predict_alkanes
-from branchpos.predicting.labels import cleavage_labels, ion_label
-from branchpos.predicting.parameters import YieldParameters
-from branchpos.predicting.retention import retention_index_of
-from branchpos.retention_index import RetentionIndex
+from branchpos.predicting.headed_labels import headed_compositions
+from branchpos.predicting.labels import NEIGHBOUR, mass_labels
+from branchpos.retention_index import EXACT, RetentionIndex
 from branchpos.scoring.error_model import T_SCALE_TO_SD, ErrorModel
-from branchpos.scoring.likelihood import TILT_PIVOT
-from branchpos.workflow.method import ALL_CARBONS
-from branchpos.workflow.model import Model, shipped_model
+from branchpos.scoring.likelihood import tilt_coordinate
+from branchpos.workflow.method import ALL_CARBONS, PLACED_CLASSES
+from branchpos.workflow.model import ClassModel, Model, shipped_model
+from branchpos.workflow.retention import has_retention_model, predict_index
 
 FloatArray = NDArray[np.float64]
 
@@ -71,9 +71,9 @@ def predict_chain(chain: Chain, model: Model | None = None, *, least: float = LE
     """
     chosen = model or shipped_model()
     _require_predictable(chain)
-    batch = _batch(chain, chosen.yields)
-    ions = tuple(ion for ion in _ions(chain, batch, chosen) if ion.expected >= least)
-    return Prediction(IonSeries(chain, ions), retention_index_of(chain, chosen.retention))
+    class_model = chosen.of(chain.end_group)
+    ions = tuple(ion for ion in _ions(chain, class_model) if ion.expected >= least)
+    return Prediction(IonSeries(chain, ions), _index_of(chain, chosen))
 
 
 def relative_abundance(batch: SeriesBatch) -> FloatArray:
@@ -83,9 +83,10 @@ def relative_abundance(batch: SeriesBatch) -> FloatArray:
 
 
 def _require_predictable(chain: Chain) -> None:
-    if chain.end_group.name != "alkane":
+    if chain.end_group.name not in PLACED_CLASSES:
         raise SettingsError(
-            f"the class {chain.end_group.name!r} cannot be predicted yet", remedy="give an alkane"
+            f"the class {chain.end_group.name!r} cannot be predicted",
+            remedy=f"give a chain of {', '.join(PLACED_CLASSES)}",
         )
     if chain.carbons not in ALL_CARBONS:
         raise SettingsError(
@@ -94,49 +95,65 @@ def _require_predictable(chain: Chain) -> None:
         )
 
 
-def _batch(chain: Chain, yields: YieldParameters) -> SeriesBatch:
-    positions = np.array([chain.methyls], dtype=np.int16).reshape(1, -1)
-    return predict_alkanes(yields, chain.backbone, positions)
+def _index_of(chain: Chain, model: Model) -> RetentionIndex | None:
+    if not has_retention_model(chain.end_group):
+        return None
+    mean, sd = predict_index(_positions(chain), chain.backbone, chain.end_group, model)
+    return RetentionIndex(float(mean[0]), sd=max(float(sd[0]), EXACT))
 
 
-def _ions(chain: Chain, batch: SeriesBatch, model: Model) -> Iterator[Ion]:
+def _positions(chain: Chain) -> NDArray[np.int16]:
+    return np.array([chain.methyls], dtype=np.int16).reshape(1, -1)
+
+
+def _compositions(chain: Chain, batch: SeriesBatch) -> dict[int, Formula]:
+    """Return the compositions that are known, by mass number."""
+    if chain.end_group != ALKANE:
+        return headed_compositions(chain)
+    ions = zip(batch.masses.tolist(), batch.carbons.tolist(), strict=True)
+    return {mass: Formula(carbons, mass - 12 * carbons) for mass, carbons in ions}
+
+
+def _ions(chain: Chain, model: ClassModel) -> Iterator[Ion]:
+    batch = model.predict(chain.backbone, _positions(chain))
     expected = relative_abundance(batch)[0]
-    sd = np.sqrt(_parameter_variance(chain, model.yields) + _recording_variance(batch, model.errors))
+    sd = np.sqrt(_parameter_variance(chain, model) + _recording_variance(batch, model.errors))
     low, high = expected * np.exp(-REACH * sd), np.minimum(expected * np.exp(REACH * sd), 1.0)
-    labels = cleavage_labels(chain)
+    labels, compositions = mass_labels(chain), _compositions(chain, batch)
     for column in np.argsort(batch.masses):
-        mass, carbons = int(batch.masses[column]), int(batch.carbons[column])
-        hydrogens = mass - 12 * carbons
+        mass = int(batch.masses[column])
+        composition = compositions.get(mass)
         yield Ion(
             mz=mass,
-            exact_mz=Formula(carbons, hydrogens).cation_mz,
-            carbons=carbons,
-            hydrogens=hydrogens,
+            exact_mz=None if composition is None else composition.cation_mz,
+            carbons=int(batch.carbons[column]),
+            composition=composition,
             kind=IonKind(int(batch.kinds[column])),
             expected=float(expected[column]),
             low=float(low[column]),
             high=float(high[column]),
             steered=float(batch.steered[0, column]),
-            cleavage=ion_label(chain, carbons, mass, labels),
+            cleavage=labels.get(mass, NEIGHBOUR),
         )
 
 
-def _parameter_variance(chain: Chain, yields: YieldParameters) -> FloatArray:
+def _parameter_variance(chain: Chain, model: ClassModel) -> FloatArray:
     """Return the variance of each log relative abundance that the fitted parameters leave, shape (ions,)."""
     slopes = []
-    for index in range(yields.values.size):
-        ends = [_log_relative(chain, yields, index, step) for step in (_DIFFERENCE, -_DIFFERENCE)]
+    for index in range(model.parameters.values.size):
+        ends = [_log_relative(chain, model, index, step) for step in (_DIFFERENCE, -_DIFFERENCE)]
         slopes.append((ends[0] - ends[1]) / (2 * _DIFFERENCE))
     gradient = np.array(slopes)
-    return np.asarray(np.einsum("pi,pq,qi->i", gradient, yields.covariance, gradient))
+    return np.asarray(np.einsum("pi,pq,qi->i", gradient, model.parameters.covariance, gradient))
 
 
-def _log_relative(chain: Chain, yields: YieldParameters, index: int, step: float) -> FloatArray:
+def _log_relative(chain: Chain, model: ClassModel, index: int, step: float) -> FloatArray:
     """Return log abundances relative to the base peak with one parameter shifted, shape (ions,)."""
-    values = yields.values.copy()
+    values = model.parameters.values.copy()
     values[index] += step
-    shifted = _batch(chain, replace(yields, values=values))
-    return np.asarray(np.log(np.maximum(relative_abundance(shifted)[0], 1e-12)))
+    shifted = replace(model, parameters=replace(model.parameters, values=values))
+    batch = shifted.predict(chain.backbone, _positions(chain))
+    return np.asarray(np.log(np.maximum(relative_abundance(batch)[0], 1e-12)))
 
 
 def _recording_variance(batch: SeriesBatch, errors: ErrorModel) -> FloatArray:
@@ -147,7 +164,8 @@ def _recording_variance(batch: SeriesBatch, errors: ErrorModel) -> FloatArray:
     """
     base = int(batch.abundance[0].argmax())
     own = (np.array(errors.scales)[batch.kinds] * T_SCALE_TO_SD) ** 2
-    tilt = errors.tilt_sd * (batch.carbons - batch.carbons[base]) / TILT_PIVOT
+    places = tilt_coordinate(batch.masses)
+    tilt = errors.tilt_sd * (places - places[base])
     contrast = errors.contrast_sd * batch.steered[0]
     doublet = errors.doublet_sd * batch.steered[0] * (batch.kinds == IonKind.REARRANGED)
     return np.asarray(own + tilt**2 + contrast**2 + doublet**2)

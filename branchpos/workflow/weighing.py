@@ -11,8 +11,9 @@ from numpy.typing import NDArray
 from branchpos.chain import Chain
 from branchpos.deciding.posterior import Posterior
 from branchpos.evidence import IonEvidence, Shares
+from branchpos.ion_series import IonKind
 from branchpos.mass_channels import MassChannels
-from branchpos.predicting.labels import mass_labels
+from branchpos.predicting.labels import NEIGHBOUR, mass_labels
 from branchpos.verdict import RankedHypothesis
 from branchpos.workflow.scores import ScoredBatch
 
@@ -115,7 +116,8 @@ def _ions(
             observed=float(view.intensity[column]) if view.seen[column] else None,
             expected=float(expected[column]),
             threshold=channels.threshold,
-            cleavage=labels.get(mass, "neighbour of stronger ions"),
+            cleavage=labels.get(mass, NEIGHBOUR),
+            kind=IonKind(int(one.batch.kinds[column])),
             weight_of_evidence=(account.by_mass[mass] - other.by_mass.get(mass, 0.0)) * _BITS,
         )
         for mass, column in sorted((int(m), i) for i, m in enumerate(one.batch.masses))
