@@ -61,7 +61,30 @@ def test_ions_below_the_limit_are_left_out() -> None:
     assert all(ion.expected >= 0.05 for ion in few)
 
 
-@pytest.mark.parametrize("chain", [Chain(18, (10,), END_GROUPS["methyl ester"]), Chain(3), Chain(80)])
+@pytest.mark.parametrize("chain", [Chain(18, (), END_GROUPS["alkene"]), Chain(3), Chain(80)])
 def test_what_cannot_be_predicted_is_refused(chain: Chain) -> None:
     with pytest.raises(SettingsError):
         predict_chain(chain)
+
+
+def test_gap_of_a_pyrrolidide() -> None:
+    # 13-methyltetradecanoic acid pyrrolidide: a step of 28 from m/z 252 to 280 (W. W. Christie, published
+    # pages on the mass spectrometry of fatty acid derivatives, from memory).
+    chain = Chain(14, (13,), END_GROUPS["pyrrolidide"])
+    ions = {ion.mz: ion.expected for ion in predict_chain(chain, least=0.0).series.ions}
+    assert ions[266] < 0.5 * min(ions[252], ions[280])
+
+
+def test_gap_of_a_pyridylcarbinol_ester() -> None:
+    # 17-methyloctadecanoic acid: a step of 28 from m/z 346 to 374 (same source).
+    chain = Chain(18, (17,), END_GROUPS["3-pyridylcarbinol ester"])
+    ions = {ion.mz: ion.expected for ion in predict_chain(chain, least=0.0).series.ions}
+    assert ions[360] < 0.5 * min(ions[346], ions[374])
+
+
+def test_alpha_methyl_moves_the_mclafferty_ion() -> None:
+    # 74 becomes 88 in a 2-methyl methyl ester (MassBank MSBNK-Fac_Eng_Univ_Tokyo-JP001858: base peak 88).
+    chain = Chain(16, (2,), END_GROUPS["methyl ester"])
+    ions = {ion.mz: ion.expected for ion in predict_chain(chain, least=0.0).series.ions}
+    assert ions[88] == 1.0
+    assert ions[74] < 0.05
