@@ -9,7 +9,7 @@ from pathlib import Path
 import click
 
 from branchpos.cli.failures import not_writable
-from branchpos.cli.options import json_option, quiet_option
+from branchpos.cli.options import chain_classes, json_option, quiet_option
 
 _FOLDER = click.Path(path_type=Path, exists=True, file_okay=False)
 _FILE = click.Path(path_type=Path, exists=True, dir_okay=False)
@@ -20,16 +20,17 @@ _NEW = click.Path(path_type=Path, file_okay=False)
 @click.argument("folder", metavar="DIR", type=_FOLDER)
 @click.option("--retention", type=_FILE, metavar="FILE", help="Measured retention indices to fit as well.")
 @click.option("--out", type=_NEW, metavar="DIR", help="Where to write the fits [the shipped reference sets].")
+@click.option("--chain", metavar="CLASS,...", help="Chain classes to fit [all].")
 @quiet_option
-def refit(folder: Path, retention: Path | None, out: Path | None, quiet: bool) -> None:
-    """Fit yield, retention and reliability parameters again.
+def refit(folder: Path, retention: Path | None, out: Path | None, chain: str | None, quiet: bool) -> None:
+    """Fit yield and retention parameters again.
 
     DIR holds reference spectra and their truth.csv.
     """
     from branchpos.workflow.refit import run_refit
 
     try:
-        written = run_refit(folder, retention, out)
+        written = run_refit(folder, retention, out, *([chain_classes(chain)] if chain else []))
     except OSError as problem:
         raise not_writable(problem.filename or folder, problem) from problem
     _tell(written, quiet)

@@ -9,7 +9,9 @@ from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
+from branchpos.end_group import ALKANE
 from branchpos.errors import FormatError, InputError, SettingsError
+from branchpos.predicting.classes import CLASS_RULES
 from branchpos.predicting.ester_retention import ester_record_of, fit_ester_retention
 from branchpos.predicting.parameters import parameters_to_record
 from branchpos.predicting.retention_fit import fit_retention, read_index_rows, record_of
@@ -17,6 +19,8 @@ from branchpos.reading import read_spectrum
 from branchpos.reference_data import load_reference, reference_path
 from branchpos.scoring.error_model import errors_to_record
 from branchpos.spectrum import Spectrum
+from branchpos.workflow.class_refit import refit_classes, write_classes
+from branchpos.workflow.model import CLASS_YIELDS_FILE
 from branchpos.workflow.reference_spectra import (
     TRUTH_TABLE,
     KnownSpectrum,
@@ -34,16 +38,23 @@ _FEWEST_STRAIGHT = 3
 """Straight-chain esters that a line with a scatter needs."""
 
 
-def run_refit(folder: Path, retention: Path | None = None, out: Path | None = None) -> list[Path]:
+def run_refit(
+    folder: Path,
+    retention: Path | None = None,
+    out: Path | None = None,
+    chain: Sequence[str] = ("alkane", *CLASS_RULES),
+) -> list[Path]:
     """Fit the shipped parameters again and write them as reference sets.
 
     Parameters
     ----------
-    folder : spectra of known alkanes with ``truth.csv``, see ``read_known_spectra``.
+    folder : spectra of known chains with ``truth.csv``, see ``read_known_spectra``; a class with an end group
+        that has no record there keeps its shipped model.
     retention : table of measured indices; without one the retention set is left alone. A table
         ``methyl_esters.csv`` beside it and straight-chain esters with an index in ``folder`` renew the part
         on esters; without them that part is kept as it is shipped.
     out : folder to write to; the reference sets of the checkout when not given.
+    chain : classes to fit; the files of the others are left alone.
 
     Returns
     -------
@@ -58,17 +69,27 @@ def run_refit(folder: Path, retention: Path | None = None, out: Path | None = No
     if retention is not None and not retention.is_file():
         raise InputError("no table of retention indices", file=str(retention), remedy="check the path")
     rows = read_index_rows(retention) if retention is not None else None
-    written = [target / YIELDS_FILE]
-    fit = refit_yields(folder)
-    target.mkdir(parents=True, exist_ok=True)
-    write_yields(fit, written[0])
+    written = []
+    if ALKANE.name in chain:
+        fit = refit_yields(folder)
+        written.append(_ready(target / YIELDS_FILE))
+        write_yields(fit, written[-1])
+    if headed := [name for name in chain if name in CLASS_RULES]:
+        models = refit_classes(folder, headed, provenance_of)
+        written.append(_ready(target / CLASS_YIELDS_FILE))
+        write_classes(models, written[-1])
     if retention is not None and rows is not None:
         today = _today()
         alkanes = record_of(fit_retention(rows, today))
         record = {"alkanes": alkanes, "methyl esters": _ester_record(folder, retention, today)}
-        written.append(target / RETENTION_FILE)
+        written.append(_ready(target / RETENTION_FILE))
         written[-1].write_text(json.dumps(record) + "\n", encoding="utf-8")
     return written
+
+
+def _ready(path: Path) -> Path:
+    path.parent.mkdir(parents=True, exist_ok=True)
+    return path
 
 
 def _checkout_sets() -> Path:

@@ -49,7 +49,7 @@ def test_retention_and_esters_come_out_as_shipped(
     shared: Path, tmp_path: Path, quick_yields: YieldFit
 ) -> None:
     table = shared / "retention" / "methylalkanes.csv"
-    yields, retention = run_refit(shared / "spectra", table, tmp_path / "new")
+    yields, retention = run_refit(shared / "spectra", table, tmp_path / "new", ("alkane",))
     record = json.loads(retention.read_text(encoding="utf-8"))
     shipped = load_reference("retention.json")
     positions = np.array([[5, 11], [3, 13]])
@@ -69,7 +69,9 @@ def test_without_ester_data_the_shipped_part_is_kept(
 ) -> None:
     alone = tmp_path / "indices.csv"
     alone.write_bytes((shared / "retention" / "methylalkanes.csv").read_bytes())
-    record = json.loads(run_refit(shared / "spectra", alone, tmp_path)[1].read_text(encoding="utf-8"))
+    record = json.loads(
+        run_refit(shared / "spectra", alone, tmp_path, ("alkane",))[1].read_text(encoding="utf-8")
+    )
     assert record["methyl esters"] == load_reference("retention.json")["methyl esters"]
 
 
@@ -92,9 +94,9 @@ def test_an_installed_program_is_not_overwritten(
 
 def test_a_folder_without_a_table_is_refused(tmp_path: Path) -> None:
     with pytest.raises(InputError, match="no table of known structures"):
-        run_refit(tmp_path, out=tmp_path)
+        run_refit(tmp_path, out=tmp_path, chain=("alkane",))
     with pytest.raises(InputError, match=r"absent\.csv: no table of retention indices"):
-        run_refit(tmp_path, tmp_path / "absent.csv", tmp_path)
+        run_refit(tmp_path, tmp_path / "absent.csv", tmp_path, ("alkane",))
 
 
 def test_a_bad_row_of_the_ester_table_is_named(shared: Path, tmp_path: Path, quick_yields: YieldFit) -> None:
@@ -103,4 +105,4 @@ def test_a_bad_row_of_the_ester_table_is_named(shared: Path, tmp_path: Path, qui
     heads = "chain_class,backbone_carbons,methyl_positions,equivalent_chain_length\n"
     (tmp_path / "methyl_esters.csv").write_text(heads + "methyl ester,14,13,long\n", encoding="utf-8")
     with pytest.raises(FormatError, match=r"methyl_esters\.csv: line 2"):
-        run_refit(shared / "spectra", table, tmp_path / "out")
+        run_refit(shared / "spectra", table, tmp_path / "out", ("alkane",))
