@@ -47,5 +47,8 @@ _CLASSES = (
 END_GROUPS = {group.name: group for group in _CLASSES}
 """Every chain class by its name."""
 
+PLACED_CLASSES = tuple(name for name in END_GROUPS if name != "alkene")
+"""Classes whose branches can be placed; alkenes are recognised only."""
+
 ALKANE = END_GROUPS["alkane"]
 """The class without an end group."""

@@ -76,7 +76,7 @@ def method_options(command: Command) -> Command:
         return command(*args, asked=asked, **others)
 
     options = (
-        click.option("--chain", metavar="CLASS[,CLASS]", help="Chain classes to consider [all]."),
+        click.option("--chain", metavar="CLASS[,CLASS]", help="Chain classes to consider, or all [alkane]."),
         click.option("--carbons", metavar="N or N-M", help="Carbons, branches included [as the data allow]."),
         click.option("--methyls", metavar="N or N-M", help="Numbers of methyl branches [0-4]."),
         click.option("--formula", metavar="FORMULA", help="Molecular formula; overrules --carbons."),
@@ -130,8 +130,10 @@ def chain_classes(text: str) -> tuple[str, ...]:
     >>> chain_classes("alkane, methyl-ester")
     ('alkane', 'methyl ester')
     """
-    from branchpos.end_group import END_GROUPS
+    from branchpos.end_group import END_GROUPS, PLACED_CLASSES
 
+    if text.strip().lower() == "all":
+        return PLACED_CLASSES
     spelt = {name.replace(" ", "-"): name for name in END_GROUPS}
     asked = [part.strip().lower().replace(" ", "-") for part in text.split(",")]
     return tuple(spelt[require_known("chain class", name, spelt)] for name in asked)

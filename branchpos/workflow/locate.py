@@ -64,5 +64,5 @@ def locate_branches(
         credible_set=call.credible_set,
         prior=str(PRIORS[method.prior]),
         reasons=reasons(call, ranked, posterior.none_of_these),
-        warnings=(*spectrum.warnings, *doubts, *left_out(groups)),
+        warnings=(*spectrum.warnings, *doubts, *left_out(groups), *method.caution()),
     )

@@ -6,7 +6,7 @@ import tomllib
 from dataclasses import dataclass, fields, replace
 from pathlib import Path
 
-from branchpos.end_group import END_GROUPS, EndGroup
+from branchpos.end_group import END_GROUPS, PLACED_CLASSES, EndGroup
 from branchpos.enumerating import PRIORS
 from branchpos.errors import SettingsError
 from branchpos.masses import Formula, parse_formula
@@ -14,8 +14,8 @@ from branchpos.masses import Formula, parse_formula
 ALL_CARBONS = range(5, 61)
 """Carbons that may be asked for: smaller chains have no branch to place, larger ones were not checked."""
 MOST_METHYLS = 6
-PLACED_CLASSES = tuple(name for name in END_GROUPS if name != "alkene")
-"""Classes whose branches can be placed; alkenes are recognised only."""
+CHECKED_CLASSES = ("alkane",)
+"""Classes whose probabilities were checked on compounds left out of the fit; the default."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -24,7 +24,7 @@ class Method:
 
     Attributes
     ----------
-    chain : chain classes to consider, by name.
+    chain : chain classes to consider, by name; the checked ones when not given.
     carbons : carbons of the skeleton to consider, branches included; None lets the spectrum say.
     methyls : numbers of methyl branches to consider; isoprenoids with more are added when it begins at 0 or 1
         and ends at 4 or more.
@@ -37,7 +37,7 @@ class Method:
     SettingsError : a value is out of range or unknown.
     """
 
-    chain: tuple[str, ...] = PLACED_CLASSES
+    chain: tuple[str, ...] = CHECKED_CLASSES
     carbons: range | None = None
     methyls: range = range(5)
     formula: str | None = None
@@ -58,6 +58,17 @@ class Method:
             _check_range("carbons", self.carbons, ALL_CARBONS)
         if self.formula is not None:
             self.sizes_of_formula()
+
+    def caution(self) -> tuple[str, ...]:
+        """Return what has to be said of the classes asked for, in words."""
+        unchecked = [name for name in self.chain if name not in CHECKED_CLASSES]
+        if not unchecked:
+            return ()
+        named = unchecked[0] if len(unchecked) == 1 else f"{len(unchecked)} of the chain classes asked for"
+        return (
+            f"probabilities for {named} are not yet checked on compounds left out of the fit: "
+            "take them as a ranking",
+        )
 
     def sizes_of_formula(self) -> list[tuple[EndGroup, int]]:
         """Return the classes and numbers of carbons that have the formula.

@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from branchpos.chain import Chain
-from branchpos.end_group import ALKANE
+from branchpos.end_group import ALKANE, PLACED_CLASSES
 from branchpos.errors import SettingsError
 from branchpos.ion_series import Ion, IonKind, IonSeries, SeriesBatch
 from branchpos.masses import Formula
@@ -18,7 +18,7 @@ from branchpos.predicting.labels import NEIGHBOUR, mass_labels
 from branchpos.retention_index import EXACT, RetentionIndex
 from branchpos.scoring.error_model import T_SCALE_TO_SD, ErrorModel
 from branchpos.scoring.likelihood import tilt_coordinate
-from branchpos.workflow.method import ALL_CARBONS, PLACED_CLASSES
+from branchpos.workflow.method import ALL_CARBONS
 from branchpos.workflow.model import ClassModel, Model, shipped_model
 from branchpos.workflow.retention import has_retention_model, predict_index
 
