@@ -21,7 +21,7 @@ from branchpos.workflow.yield_fit import YieldFit, fit_yields
 SETTLED = 0.02
 """Largest last move of any parameter, in standard errors, with which a fit counts as settled."""
 _ROUND = 2
-_MOST_ROUNDS = 12
+_MOST_ROUNDS = 20
 
 
 @dataclass(frozen=True, slots=True)
