@@ -10,8 +10,9 @@ _MARKER = 207
 _NEIGHBOURS = (-2, -1, 3, 4)
 """Mass numbers beside the marker and its isotopes."""
 _PROMINENCE = 3.0
-BLEED_ON_SERIES = (281, 282, 283, 295, 296)
-"""Bleed ions with isotopes that fall on the alkyl series."""
+BLEED_MASSES = (73, 147, 207, 208, 209, 221, 281, 282, 283, 295, 296, 355, 356, 429)
+"""Siloxane ions of bleed with the isotopes of the strongest (common practice); 281 and 295 fall on the alkyl
+series."""
 
 
 def shows_bleed(intensity: NDArray[np.float64]) -> bool:

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import NDArray
 
-from branchpos.cleaning.bleed import BLEED_ON_SERIES, shows_bleed
+from branchpos.cleaning.bleed import BLEED_MASSES, shows_bleed
 from branchpos.cleaning.mass_axis import align_masses, axis_is_steady
 from branchpos.mass_channels import MassChannels
 from branchpos.masses import electron_mass, isotopes
@@ -54,8 +54,8 @@ def to_channels(spectrum: Spectrum) -> tuple[MassChannels, tuple[str, ...]]:
     intensity = np.asarray(np.bincount(masses[own], weights=relative[own], minlength=size), dtype=float)
     contaminated = np.zeros(size, dtype=bool)
     if not spectrum.accurate and shows_bleed(intensity):
-        contaminated[[mass for mass in BLEED_ON_SERIES if mass < size]] = True
-        notes.append("column bleed (m/z 207, 281): the ions it shares with chains are left out")
+        contaminated[[mass for mass in BLEED_MASSES if mass < size]] = True
+        notes.append("column bleed (m/z 207): its mass numbers, 281 and 295 among them, are left out")
     channels = MassChannels(
         intensity=intensity / max(float(intensity.max()), 1e-12),
         doubtful=np.bincount(masses, weights=spectrum.doubtful & own, minlength=size) > 0,

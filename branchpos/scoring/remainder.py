@@ -20,17 +20,25 @@ from branchpos.scoring.likelihood import TILT_PIVOT
 FloatArray = NDArray[np.float64]
 IntArray = NDArray[np.intp]
 
-BLEED_MASSES = (73, 147, 207, 221, 281, 295, 355, 429)
-"""Siloxane ions of column bleed (common practice); they speak for no hypothesis."""
 _SMALL = 0.005
 """Relative height up to which a stray peak is noise and says nothing on how heavy it may get (judgement, as
-the next four)."""
+the next five)."""
+_LARGEST_NOISE = 0.01
 _LARGEST_IMPURITY_SHARE = 0.08
-_IMPURITY_FALL = 1.2
-_IMPURITY_FLOOR = -9.0
+_IMPURITY_FALL = 2.0
+_IMPURITY_FLOOR = -16.0
 _ISOTOPE_MARGIN = 1.5
 _SIDE_FLOOR = -6.5
 _CARBON_13 = 0.0108
+WHOLE = 0
+"""Stands among the mass numbers for the unexplained share of the whole ion current."""
+_UNEXPLAINED_MEAN = 0.025
+"""Usual share of the ion current that a chain leaves unexplained: no known alkane leaves more than 0.152
+(measured on the records that the fits rest on)."""
+ALKYL_MASSES = np.array([41, 42, 43, 55, 56, 57, 69, 70, 71, 83, 84, 85, 97, 98, 99])
+ALKYL_LEVELS = np.array([0.45, 0.12, 0.9, 0.6, 0.25, 1.0, 0.35, 0.2, 0.55, 0.25, 0.15, 0.35, 0.2, 0.1, 0.1])
+"""Low ions of an alkyl part, midway between alkanes and 1-alkenes of the records that the fits rest on."""
+_ALKYL_SCALE = 0.7
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -39,7 +47,7 @@ class Remainder:
 
     Attributes
     ----------
-    masses : mass numbers, shape (masses,).
+    masses : mass numbers, shape (masses,); ``WHOLE`` stands for the ion current as a whole.
     by_mass : natural log likelihood of each, same shape.
     """
 
@@ -62,7 +70,7 @@ def score_remainder(
     effects : log scale, tilt, contrast and doublet level of the best chain of the batch, shape (4,).
     heaviest : last mass number that any hypothesis of the comparison speaks of.
     """
-    masses = np.setdiff1d(recorded_masses(channels, heaviest), [*batch.masses.tolist(), *BLEED_MASSES])
+    masses = np.setdiff1d(recorded_masses(channels, heaviest), batch.masses)
     excess = unexplained(channels, masses)
     side, places, members = np.intersect1d(masses, batch.side_masses, return_indices=True)
     empty = np.setdiff1d(np.arange(masses.size), places)
@@ -73,19 +81,29 @@ def score_remainder(
         tilted = effects[0] + effects[1] * (sizes - TILT_PIVOT) / TILT_PIVOT
         expected = batch.side_abundance[members] * np.exp(tilted) + isotopes_below(channels, side)
         by_mass[places] = _side(channels, side, expected, errors.scales[IonKind.SHARED])
-    return Remainder(masses, by_mass)
+    whole = _unexplained_whole(channels, float(excess[empty].sum()), heaviest)
+    return Remainder(np.append(masses, WHOLE), np.append(by_mass, whole))
 
 
 def score_no_chain(channels: MassChannels, heaviest: int) -> Remainder:
-    """Score every recorded mass number under a compound that the program has no model for."""
-    masses = np.setdiff1d(recorded_masses(channels, heaviest), BLEED_MASSES)
-    excess = unexplained(channels, masses)
-    return Remainder(masses, _anything(excess, channels.threshold))
+    """Score every recorded mass number under a compound that the program has no model for.
+
+    Where it suits the spectrum better, the compound has an alkyl part, which shows the low hydrocarbon ions
+    that so many compounds share; they then speak for no chain.
+    """
+    masses = recorded_masses(channels, heaviest)
+    anything = _anything(unexplained(channels, masses), channels.threshold)
+    with_alkyl = anything.copy()
+    _, places, members = np.intersect1d(masses, ALKYL_MASSES, return_indices=True)
+    if places.size:
+        with_alkyl[places] = _alkyl_part(channels, masses[places], np.log(ALKYL_LEVELS[members]))
+    return Remainder(masses, with_alkyl if with_alkyl.sum() > anything.sum() else anything)
 
 
 def recorded_masses(channels: MassChannels, heaviest: int) -> IntArray:
-    """Return the recorded mass numbers from the lightest to the heaviest of interest."""
-    return np.arange(max(channels.first, 39), int(min(channels.last, heaviest)) + 1)
+    """Return the recorded, uncontaminated mass numbers from the lightest to the heaviest of interest."""
+    masses = np.arange(max(channels.first, 39), int(min(channels.last, heaviest)) + 1)
+    return masses[channels.at(masses).recorded]
 
 
 def unexplained(channels: MassChannels, masses: IntArray) -> FloatArray:
@@ -106,9 +124,17 @@ def isotopes_below(channels: MassChannels, masses: IntArray) -> FloatArray:
     )
 
 
+def _alkyl_part(channels: MassChannels, masses: IntArray, log_levels: FloatArray) -> FloatArray:
+    """Score the low hydrocarbon ions of an unknown compound at the height that suits them best."""
+    view = channels.at(masses)
+    logs = np.log(np.where(view.seen, view.intensity, channels.threshold))
+    height = float(np.median((logs - log_levels)[view.seen])) if view.seen.any() else 0.0
+    return _side(channels, masses, np.exp(height + log_levels), _ALKYL_SCALE)
+
+
 def _stray(excess: FloatArray, threshold: float) -> FloatArray:
     """Score mass numbers that should be empty: noise at will, larger peaks few and falling with height."""
-    level = max(threshold, _SMALL)
+    level = _noise_level(threshold)
     small, large = _shares(excess, level)
     large = min(large, _LARGEST_IMPURITY_SHARE)
     fall = np.log(large * _IMPURITY_FALL) - _IMPURITY_FALL * np.log(np.maximum(excess / level, 1.0))
@@ -120,12 +146,17 @@ def _stray(excess: FloatArray, threshold: float) -> FloatArray:
 
 def _anything(excess: FloatArray, threshold: float) -> FloatArray:
     """Score mass numbers where peaks of any height may stand."""
-    level = max(threshold, _SMALL)
+    level = _noise_level(threshold)
     small, large = _shares(excess, level)
     high = np.full(excess.shape, np.log(large) - _width(level, 1.0))
     return _by_height(
         excess, level, np.log(1 - small - large), np.log(small) - _width(threshold, level), high
     )
+
+
+def _noise_level(threshold: float) -> float:
+    """Return the height up to which a peak counts as noise, whatever the list was cut at."""
+    return min(max(threshold, _SMALL), _LARGEST_NOISE)
 
 
 def _shares(excess: FloatArray, level: float) -> tuple[float, float]:
@@ -142,6 +173,15 @@ def _width(low: float, high: float) -> float:
 
 def _by_height(excess: FloatArray, level: float, empty: float, small: float, high: FloatArray) -> FloatArray:
     return np.asarray(np.where(excess == 0, empty, np.where(excess <= level, small, high)))
+
+
+def _unexplained_whole(channels: MassChannels, unexplained_height: float, heaviest: int) -> float:
+    """Score the unexplained share of the ion current: exponential, against any share alike."""
+    masses = recorded_masses(channels, heaviest)
+    inside = masses[masses < channels.intensity.size]
+    whole = float((channels.intensity[inside] + channels.foreign[inside]).sum())
+    share = unexplained_height / max(whole, 1e-12)
+    return float(-np.log(_UNEXPLAINED_MEAN) - share / _UNEXPLAINED_MEAN)
 
 
 def _side(channels: MassChannels, masses: IntArray, expected: FloatArray, scale: float) -> FloatArray:

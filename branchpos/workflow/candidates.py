@@ -20,7 +20,7 @@ from branchpos.errors import SettingsError
 from branchpos.ion_series import SeriesBatch
 from branchpos.mass_channels import MassChannels
 from branchpos.scoring.likelihood import fit_batch
-from branchpos.scoring.remainder import Remainder, score_remainder
+from branchpos.scoring.remainder import Remainder, score_no_chain, score_remainder
 from branchpos.scoring.screening import screen_batch
 from branchpos.workflow.first_look import likely_sizes
 from branchpos.workflow.method import Method
@@ -32,6 +32,9 @@ _MARGINS = {2: 40.0, 3: 25.0}
 """Natural-log margin within which a number of carbons is looked at with 2, and with more methyls."""
 _LEAST_GAIN = 2.0
 """Natural-log gain that the second methyl must bring over one or none before more are tried."""
+_HOPELESS = 60.0
+"""Natural-log margin by which chains with few methyls may stay behind an unknown compound and still be
+overtaken by chains with more: about twice the largest gain of a second methyl on the known records."""
 _FITTED_FOR_STANDING = 3
 _MOST_CHAINS = 150_000
 """Chains of one number of methyls that one look may try over all sizes; above, the likeliest sizes."""
@@ -115,9 +118,11 @@ def screen_candidates(
         raise SettingsError(
             "no chain has the carbons and methyls asked for", remedy="ask for more carbons or fewer methyls"
         )
-    heaviest = heaviest_mass(sizes)
+    heaviest = heaviest_mass(sizes, channels)
     few = [k for k in method.methyls if k < min(_MARGINS)] or list(method.methyls)
     _extend(groups, few, channels, heaviest, model)
+    if _is_hopeless(groups, channels, heaviest):
+        return [group for group in groups if group.screened]
     for methyls in sorted(set(method.methyls) - set(few)):
         margin = _MARGINS[min(methyls, max(_MARGINS))]
         hopeful = [group for group in _leading(groups, margin) if group.gains_from_methyls(methyls)]
@@ -127,6 +132,12 @@ def screen_candidates(
             if group.end_group == ALKANE and group.gains_from_methyls(method.methyls[-1]):
                 _add_isoprenoids(group, method, channels, heaviest, model)
     return [group for group in groups if group.screened]
+
+
+def _is_hopeless(groups: Sequence[SizeGroup], channels: MassChannels, heaviest: int) -> bool:
+    """Tell whether no chain comes within reach of a compound without any model."""
+    nothing = score_no_chain(channels, heaviest).total
+    return max(group.standing for group in groups) < nothing - _HOPELESS
 
 
 def _has_chains(end_group: EndGroup, carbons: int, method: Method) -> bool:
@@ -159,9 +170,10 @@ def _affordable(groups: Sequence[SizeGroup], methyls: int) -> list[SizeGroup]:
     return kept
 
 
-def heaviest_mass(sizes: Iterable[tuple[EndGroup, int]]) -> int:
-    """Return the last mass number that chains of these sizes speak of: M + 3 of the heaviest."""
-    return max(14 * carbons + 5 + end_group.added.nominal_mass for end_group, carbons in sizes)
+def heaviest_mass(sizes: Iterable[tuple[EndGroup, int]], channels: MassChannels) -> int:
+    """Return the last mass number that has to be explained: M + 3 of the heaviest chain, or the last peak."""
+    molecules = [14 * carbons + 5 + end_group.added.nominal_mass for end_group, carbons in sizes]
+    return max(*molecules, channels.heaviest)
 
 
 def _leading(groups: list[SizeGroup], margin: float) -> list[SizeGroup]:

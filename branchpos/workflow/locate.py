@@ -44,7 +44,7 @@ def locate_branches(
     channels, doubts = to_channels(spectrum)
     sizes = choose_sizes(channels, method, model)
     groups = screen_candidates(channels, sizes, method, model)
-    recordings = judge_quality(channels, groups, heaviest_mass(sizes), model)
+    recordings = judge_quality(channels, groups, heaviest_mass(sizes, channels), model)
     scored = score_candidates(recordings, groups, retention_index, method, model)
     rivals = score_rivals(recordings, groups, retention_index)
     posterior = normalise([one.log_joint for one in scored], rivals)
