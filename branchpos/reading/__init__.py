@@ -1,4 +1,4 @@
-"""Reading spectra: a file is recognised by its content, and every good spectrum in it is kept."""
+"""Reading spectra and runs: a file is recognised by its content, and every good spectrum in it is kept."""
 
 from __future__ import annotations
 
@@ -10,10 +10,11 @@ from branchpos.errors import InputError, SpectrumError, TruncatedError
 from branchpos.reading.formats import recognise
 from branchpos.reading.numerals import counted, quoted
 from branchpos.reading.outcome import MOST_BLOCKS, Reading, too_many_blocks
+from branchpos.reading.runs import read_run
 from branchpos.reading.text_source import SourceText, load_text
 from branchpos.spectrum import Spectrum
 
-__all__ = ["Reading", "read_file", "read_spectra", "read_spectrum"]
+__all__ = ["Reading", "read_file", "read_run", "read_spectra", "read_spectrum"]
 
 
 def read_file(path: str | Path) -> Reading:
