@@ -57,7 +57,7 @@ def to_channels(spectrum: Spectrum) -> tuple[MassChannels, tuple[str, ...]]:
         contaminated[[mass for mass in BLEED_MASSES if mass < size]] = True
         notes.append("column bleed (m/z 207): its mass numbers, 281 and 295 among them, are left out")
     channels = MassChannels(
-        intensity=intensity / max(float(intensity.max()), 1e-12),
+        intensity=intensity,
         doubtful=np.bincount(masses, weights=spectrum.doubtful & own, minlength=size) > 0,
         contaminated=contaminated,
         foreign=np.asarray(
@@ -111,7 +111,7 @@ def hydrocarbon_ions(mass: int) -> list[float]:
     """Return the m/z of the hydrocarbon ions of one mass number, with and without one 13C.
 
     >>> [round(mz, 4) for mz in hydrocarbon_ions(85)]
-    [85.1012, 85.0973, 85.0073, 85.0028]
+    [85.1012, 85.0967]
     """
     hydrogen, carbon_13 = isotopes("H")[0][1], isotopes("C")[1][1]
     found = []

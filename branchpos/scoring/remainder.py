@@ -35,10 +35,13 @@ WHOLE = 0
 _UNEXPLAINED_MEAN = 0.025
 """Usual share of the ion current that a chain leaves unexplained: no known alkane leaves more than 0.152
 (measured on the records that the fits rest on)."""
-ALKYL_MASSES = np.array([41, 42, 43, 55, 56, 57, 69, 70, 71, 83, 84, 85, 97, 98, 99])
-ALKYL_LEVELS = np.array([0.45, 0.12, 0.9, 0.6, 0.25, 1.0, 0.35, 0.2, 0.55, 0.25, 0.15, 0.35, 0.2, 0.1, 0.1])
+_ALKYL_PART = {
+    39: 0.1, 41: 0.45, 42: 0.12, 43: 0.9, 53: 0.03, 54: 0.04, 55: 0.6, 56: 0.25, 57: 1.0, 67: 0.06, 68: 0.05,
+    69: 0.35, 70: 0.2, 71: 0.55, 81: 0.05, 82: 0.05, 83: 0.25, 84: 0.15, 85: 0.35, 95: 0.04, 96: 0.04,
+    97: 0.2, 98: 0.1, 99: 0.1, 109: 0.02, 110: 0.02, 111: 0.08, 112: 0.05, 113: 0.08,
+}  # fmt: skip
 """Low ions of an alkyl part, midway between alkanes and 1-alkenes of the records that the fits rest on."""
-_ALKYL_SCALE = 0.7
+_ALKYL_SCALE = 0.8
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -94,9 +97,11 @@ def score_no_chain(channels: MassChannels, heaviest: int) -> Remainder:
     masses = recorded_masses(channels, heaviest)
     anything = _anything(unexplained(channels, masses), channels.threshold)
     with_alkyl = anything.copy()
-    _, places, members = np.intersect1d(masses, ALKYL_MASSES, return_indices=True)
+    _, places, members = np.intersect1d(masses, list(_ALKYL_PART), return_indices=True)
     if places.size:
-        with_alkyl[places] = _alkyl_part(channels, masses[places], np.log(ALKYL_LEVELS[members]))
+        with_alkyl[places] = _alkyl_part(
+            channels, masses[places], np.log(np.array(list(_ALKYL_PART.values()))[members])
+        )
     return Remainder(masses, with_alkyl if with_alkyl.sum() > anything.sum() else anything)
 
 
