@@ -11,8 +11,9 @@ FloatArray = NDArray[np.float64]
 
 _WRONG_SHARE = 0.02
 """Chance that an index is misread or belongs to another peak (judgement)."""
-_WRONG_SPREAD = 100.0
-"""Width [units] over which a wrong index may fall anywhere."""
+_WRONG_SPREAD = 30.0
+"""Scale [units] of the Cauchy distribution of a wrong index about the right one (judgement): a neighbouring
+peak is likelier than one from another part of the run."""
 
 
 def retention_z(measured: RetentionIndex, mean: FloatArray, sd: FloatArray) -> FloatArray:
@@ -30,4 +31,5 @@ def retention_log_likelihood(measured: RetentionIndex, mean: FloatArray, sd: Flo
     """
     z = retention_z(measured, mean, sd)
     right = np.exp(-0.5 * z * z) / (np.hypot(sd, measured.sd) * np.sqrt(2 * np.pi))
-    return np.asarray(np.log((1 - _WRONG_SHARE) * right + _WRONG_SHARE / _WRONG_SPREAD))
+    wrong = _WRONG_SPREAD / (np.pi * (_WRONG_SPREAD**2 + (measured.value - mean) ** 2))
+    return np.asarray(np.log((1 - _WRONG_SHARE) * right + _WRONG_SHARE * wrong))
