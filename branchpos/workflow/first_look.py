@@ -85,7 +85,7 @@ def _range_of(channels: MassChannels, end_group: EndGroup, carbons: range | None
     return range(max(fewest, min(SMALLEST, 3)), min(most, LARGEST) + 1)
 
 
-@lru_cache(maxsize=4096)
+@lru_cache(maxsize=1024)
 def _templates(model: ClassModel, carbons: int) -> _Templates:
     rows = []
     for methyls in (0, 1):

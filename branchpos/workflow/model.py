@@ -21,7 +21,7 @@ from branchpos.reference_data import load_reference
 from branchpos.scoring.error_model import ErrorModel, errors_from_record, fitted_errors
 
 CLASS_YIELDS_FILE = "class_yields.json"
-_KEPT_ROWS = 2000
+_KEPT_ROWS = 1500
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -51,7 +51,7 @@ class ClassModel:
         return _predicted_and_kept(self, backbone, methyls)
 
 
-@lru_cache(maxsize=640)
+@lru_cache(maxsize=256)
 def _predicted_and_kept(model: ClassModel, backbone: int, methyls: int) -> SeriesBatch:
     return model.predict(backbone, chain_positions(backbone, methyls, model.end_group))
 
