@@ -220,7 +220,7 @@ def _check_times(run: Run) -> None:
 
 def _check_points(run: Run) -> None:
     falling = np.zeros(run.mz.size, dtype=bool)
-    falling[1:] = np.diff(run.mz) < 0
+    falling[1:] = run.mz[1:] < run.mz[:-1]
     falling[run.offsets[:-1][run.offsets[:-1] < run.mz.size]] = False
     for problem, wrong in (
         ("m/z is {:g}", ~np.isfinite(run.mz) | (run.mz <= 0)),

@@ -20,6 +20,7 @@ from branchpos.reading.run_assembly import RunDetails, ScanTable, assemble_run, 
 from branchpos.run import Run
 
 FloatArray = NDArray[np.float64]
+SingleArray = NDArray[np.float32]
 IntArray = NDArray[np.int64]
 BoolArray = NDArray[np.bool_]
 
@@ -46,7 +47,7 @@ class _Dataset:
     """Variables and attributes as plain arrays and text; scale factors are not yet applied."""
 
     attributes: Mapping[str, str]
-    variables: Mapping[str, NDArray[np.generic]]
+    variables: dict[str, NDArray[np.generic]]
     settings: Mapping[str, Mapping[str, object]]
 
     def real(self, name: str) -> FloatArray | None:
@@ -88,21 +89,24 @@ def read_chunks(chunks: Iterable[bytes], file: str = "") -> Run:
     InputError : the file is damaged, is no mass spectrometric run, or holds profiles.
     """
     try:
-        data = _open(b"".join(chunks))
-        return _assemble(data, file)
+        content = BytesIO()
+        content.writelines(chunks)
+        content.seek(0)
+        return _assemble(_open(content), file)
     except InputError as fault:
         raise fault.located(file=file) from None
 
 
-def _open(content: bytes) -> _Dataset:
+def _open(content: BytesIO) -> _Dataset:
+    """Take variables and attributes out of the file, and let go of its bytes."""
     from scipy.io import netcdf_file
 
     try:
         # Left to itself the library maps the file into memory, and skips the offsets of packed numbers.
-        with netcdf_file(BytesIO(content), mode="r", mmap=False, maskandscale=False) as data:
+        with content, netcdf_file(content, mode="r", mmap=False, maskandscale=False) as data:
             # The library keeps attributes as attributes of its objects, and lists them only here.
             attributes = {name: _text(value) for name, value in vars(data)["_attributes"].items()}
-            variables = {name: _native(held.data) for name, held in data.variables.items()}
+            variables = {name: held.data for name, held in data.variables.items()}
             settings = {name: dict(vars(held)["_attributes"]) for name, held in data.variables.items()}
     except _ANY_FAULT as reason:
         raise TruncatedError(
@@ -111,11 +115,6 @@ def _open(content: bytes) -> _Dataset:
             remedy="copy the file again, or export the run again",
         ) from None
     return _Dataset(attributes, variables, settings)
-
-
-def _native(values: NDArray[np.generic]) -> NDArray[np.generic]:
-    """Return a copy in the byte order of this machine; the format's own is big-endian."""
-    return np.array(values, dtype=np.asarray(values).dtype.newbyteorder("="))
 
 
 def _text(value: object) -> str:
@@ -127,11 +126,11 @@ def _text(value: object) -> str:
 def _assemble(data: _Dataset, file: str) -> Run:
     if "continuum" in data.attributes.get("experiment_type", "").lower():
         raise profile_error("experiment type", file)
-    mz, intensity = _needed(data, "mass_values"), _needed(data, "intensity_values")
+    mz, intensity = _points(data)
     if mz.size != intensity.size:
         raise FormatError(f"{mz.size} mass values but {intensity.size} intensities", remedy=_EXPORT_AGAIN)
     times = _times(data)
-    starts, counts = _starts_and_counts(data, times.size)
+    starts, counts = _starts_and_counts(data, times.size, mz.size)
     numbers = _numbers(data, times.size)
     details = RunDetails(
         file=file,
@@ -142,6 +141,17 @@ def _assemble(data: _Dataset, file: str) -> Run:
     kept = _usable(times, starts, counts, numbers, mz.size, details)
     table = _gather(starts, counts, kept, mz, intensity, times, numbers)
     return assemble_run(table, details)
+
+
+def _points(data: _Dataset) -> tuple[FloatArray, SingleArray]:
+    """Return m/z and intensity of all points, and let go of what they are made from, most of the file."""
+    mz = _needed(data, "mass_values")
+    del data.variables["mass_values"]
+    with np.errstate(over="ignore"):
+        # What single precision cannot hold becomes infinite, and the scan is left out for it.
+        intensity = _needed(data, "intensity_values").astype(np.float32)
+    del data.variables["intensity_values"]
+    return mz, intensity
 
 
 def _needed(data: _Dataset, name: str) -> FloatArray:
@@ -160,11 +170,11 @@ def _times(data: _Dataset) -> FloatArray:
     return times * 60.0 if minutes else times
 
 
-def _starts_and_counts(data: _Dataset, scans: int) -> tuple[IntArray, IntArray]:
+def _starts_and_counts(data: _Dataset, scans: int, points: int) -> tuple[IntArray, IntArray]:
     """Return where the points of each scan begin and how many they are; either follows from the other."""
     starts, counts = data.whole("scan_index"), data.whole("point_count")
     if counts is None and starts is not None:
-        counts = np.diff(np.append(starts, data.variables["mass_values"].size))
+        counts = np.diff(np.append(starts, points))
     if starts is None and counts is not None:
         starts = np.cumsum(np.maximum(counts, 0)) - np.maximum(counts, 0)
     if starts is None or counts is None:
@@ -237,7 +247,7 @@ def _gather(
     counts: IntArray,
     kept: BoolArray,
     mz: FloatArray,
-    intensity: FloatArray,
+    intensity: SingleArray,
     times: FloatArray,
     numbers: IntArray,
 ) -> ScanTable:
@@ -245,13 +255,10 @@ def _gather(
     _refuse_shared_points(starts, counts, numbers[kept])
     offsets = np.zeros(counts.size + 1, np.int64)
     np.cumsum(counts, out=offsets[1:])
-    with np.errstate(over="ignore"):
-        # What single precision cannot hold becomes infinite, and the scan is left out for it.
-        heights = intensity.astype(np.float32)
     if not np.array_equal(starts[counts > 0], offsets[:-1][counts > 0]):
         points = np.arange(offsets[-1]) + np.repeat(starts - offsets[:-1], counts)
-        mz, heights = mz[points], heights[points]
-    return ScanTable(numbers[kept], times[kept], offsets, mz[: offsets[-1]], heights[: offsets[-1]])
+        mz, intensity = mz[points], intensity[points]
+    return ScanTable(numbers[kept], times[kept], offsets, mz[: offsets[-1]], intensity[: offsets[-1]])
 
 
 def _refuse_shared_points(starts: IntArray, counts: IntArray, numbers: IntArray) -> None:

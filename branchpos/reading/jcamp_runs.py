@@ -59,6 +59,9 @@ class _Reader:
         if entry.label in ("TITLE", "END"):
             self.open_blocks += 1 if entry.label == "TITLE" else -1
             self.ended = self.open_blocks <= 0
+            if not self.pages:
+                # What an outer block says about itself does not hold for the run inside.
+                self.header.clear()
         if entry.label in ("END", "ENDNTUPLES"):
             self.page = {}
         elif entry.label in _TABLES:

@@ -16,6 +16,8 @@ from branchpos.run import Run
 
 _CHUNK = 1 << 16
 _HEAD = 1 << 16
+_UNPACKED = 1 << 13
+"""Bytes unpacked at a time: so many are lost before a place where compressed data are damaged."""
 _GZIP = b"\x1f\x8b"
 _AS_MZML = "export or convert the run as mzML or ANDI netCDF (AIA)"
 
@@ -105,6 +107,10 @@ def _take_head(chunks: Iterator[bytes]) -> tuple[bytes, Iterator[bytes]]:
     """Return the first bytes of a file, and all of its bytes again.
 
     Where the data stop inside the head, the second tells so in its place.
+
+    Raises
+    ------
+    TruncatedError : compressed data stop before their first byte.
     """
     taken: list[bytes] = []
     stop: list[TruncatedError] = []
@@ -113,6 +119,8 @@ def _take_head(chunks: Iterator[bytes]) -> tuple[bytes, Iterator[bytes]]:
             taken.append(chunk)
     except TruncatedError as reason:
         stop.append(reason)
+    if stop and not taken:
+        raise stop[0]
     return b"".join(taken), chain(taken, _stopping(stop), chunks)
 
 
@@ -157,7 +165,7 @@ def _unpack(pieces: Iterator[bytes]) -> Iterator[bytes]:
                     break
                 member = zlib.decompressobj(wbits=31)
             try:
-                unpacked = member.decompress(waiting, 16 * _CHUNK)
+                unpacked = member.decompress(waiting, _UNPACKED)
             except zlib.error as reason:
                 raise TruncatedError(
                     f"the gzip data are damaged before byte {read} ({reason})", remedy="copy the file again"
