@@ -2,7 +2,7 @@
 
 64 invented spectra of mono- to tetramethylalkanes, half of them without molecular ion, sizes known to two
 carbons either way. In 200 such spectra with other seeds the 95 % set held the truth 187 times (0.935) and a
-wrong structure was assigned 3 times (measured with the shipped parameters).
+wrong structure was assigned 3 times (measured on 2026-12-01).
 """
 
 from __future__ import annotations
