@@ -225,8 +225,9 @@ def _add(
     leading = batch.take(np.argsort(scores)[::-1][:_FITTED_FOR_STANDING])
     fit = fit_batch(view, leading, errors)
     top = int(fit.log_likelihood.argmax())
-    remainder = score_remainder(channels, batch, fit.effects[top], heaviest, errors)
-    standing = float(fit.log_likelihood[top]) + remainder.total
+    if group.remainder is None:  # isomers share it but for the instrument's effects; it is scored again later
+        group.remainder = score_remainder(channels, batch, fit.effects[top], heaviest, errors)
+    standing = float(fit.log_likelihood[top]) + group.remainder.total
     if standing > group.standing:
-        group.standing, group.remainder = standing, remainder
+        group.standing = standing
         group.best = leading.take(np.array([top]))

@@ -64,26 +64,26 @@ def score(view: ChannelView, batch: SeriesBatch) -> np.ndarray:
 
 
 def test_scoring_against_a_matrix_vector_product(
-    batch: SeriesBatch, benchmark: BenchmarkFixture, medians
+    batch: SeriesBatch, benchmark: BenchmarkFixture, quickest
 ) -> None:
     """H hypotheses by I ions take at most 30 times one numpy product of an H by I array with a vector."""
     view = observed(batch, len(batch) // 3)
     matrix = np.random.default_rng(1).random((len(batch), batch.masses.size))
     vector = np.random.default_rng(2).random(batch.masses.size)
     score(view, batch), matrix @ vector
-    scored, product = medians(lambda: score(view, batch), lambda: matrix @ vector, rounds=9)
+    scored, product = quickest(lambda: score(view, batch), lambda: matrix @ vector, rounds=25)
     benchmark.extra_info["ratio"] = scored / product
     benchmark.pedantic(score, (view, batch), rounds=1)
     print(f"\n{len(batch)} by {batch.masses.size}: {1e3 * scored:.1f} ms, {scored / product:.1f} products")
     assert scored <= 30 * product
 
 
-def test_time_grows_no_faster_than_the_hypotheses(batch: SeriesBatch, medians) -> None:
+def test_time_grows_no_faster_than_the_hypotheses(batch: SeriesBatch, quickest) -> None:
     """Eight times the chains take at most eight times as long, a quarter allowed for a busy machine."""
     part = batch.take(np.arange(0, len(batch), 8))
     view = observed(batch, 5)
-    some, every = medians(
-        lambda: screen_batch(view, part, ERRORS), lambda: screen_batch(view, batch, ERRORS), rounds=9
+    some, every = quickest(
+        lambda: screen_batch(view, part, ERRORS), lambda: screen_batch(view, batch, ERRORS), rounds=25
     )
     growth = (every / some) / (len(batch) / len(part))
     print(f"\n{len(part)}: {1e3 * some:.1f} ms, {len(batch)}: {1e3 * every:.1f} ms, growth {growth:.2f}")
@@ -144,14 +144,14 @@ def test_forty_carbons_with_up_to_four_methyls() -> None:
     assert megabytes <= 500
 
 
-def test_help_is_quick(medians) -> None:
+def test_help_is_quick(quickest) -> None:
     """At most twice the time of importing numpy, runs alternated."""
 
     def run(*arguments: str) -> None:
         subprocess.run([sys.executable, *arguments], capture_output=True, check=True)
 
-    helped, imported = medians(
-        lambda: run("-m", "branchpos", "--help"), lambda: run("-c", "import numpy"), rounds=9
+    helped, imported = quickest(
+        lambda: run("-m", "branchpos", "--help"), lambda: run("-c", "import numpy"), rounds=25
     )
     print(f"\n--help {1e3 * helped:.0f} ms, import numpy {1e3 * imported:.0f} ms")
     assert helped <= 2 * imported
