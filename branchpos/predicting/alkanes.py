@@ -47,8 +47,8 @@ def predict_alkanes(parameters: YieldParameters, backbone: int, positions: NDArr
     >>> import numpy as np
     >>> from branchpos.predicting.parameters import prior_parameters
     >>> batch = predict_alkanes(prior_parameters(), 11, np.array([[4]], dtype=np.int16))
-    >>> dict(zip(batch.masses.tolist(), batch.abundance[0] > 0.01))[127]
-    np.True_
+    >>> bool(dict(zip(batch.masses.tolist(), batch.abundance[0] > 0.01))[127])
+    True
     """
     methyls = positions.shape[1]
     carbons = backbone + methyls

@@ -38,6 +38,8 @@ overtaken by chains with more: about twice the largest gain of a second methyl o
 _FITTED_FOR_STANDING = 3
 _MOST_CHAINS = 150_000
 """Chains of one number of methyls that one look may try over all sizes; above, the likeliest sizes."""
+_MOST_OF_ONE_SIZE = 1_000_000
+"""Chains of one number of methyls and carbons that one look may try at all, some 1.5 GB."""
 _ISOPRENOID_FROM = 4
 
 
@@ -163,7 +165,7 @@ def _affordable(groups: Sequence[SizeGroup], methyls: int) -> list[SizeGroup]:
     total = 0
     for group in sorted(groups, key=lambda one: -one.standing):
         total += count_chains(group.carbons, methyls, group.end_group)
-        if kept and total > _MOST_CHAINS:
+        if total > (_MOST_CHAINS if kept else _MOST_OF_ONE_SIZE):
             group.unaffordable.append(methyls)
         else:
             kept.append(group)

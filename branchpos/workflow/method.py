@@ -84,7 +84,9 @@ class Method:
         classes = [END_GROUPS[name] for name in self.chain]
         bare = [(one, formula - one.added) for one in classes]
         found = [
-            (one, rest.c) for one, rest in bare if rest == Formula(rest.c, 2 * rest.c + 2) and rest.c > 1
+            (one, rest.c)
+            for one, rest in bare
+            if rest == Formula(rest.c, 2 * rest.c + 2) and rest.c in ALL_CARBONS
         ]
         if not found:
             raise SettingsError(

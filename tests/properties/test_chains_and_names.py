@@ -25,7 +25,7 @@ GROUPS = tuple(group for group in END_GROUPS.values() if group.name != "alkene")
 
 
 @st.composite
-def chains(draw: st.DrawFn, groups: tuple[EndGroup, ...] = GROUPS, longest: int = 100) -> Chain:
+def chains(draw: st.DrawFn, groups: tuple[EndGroup, ...] = GROUPS, longest: int = 99) -> Chain:
     """Draw a chain of 3 carbons or more with up to twelve methyls, geminal ones included."""
     group = draw(st.sampled_from(groups))
     backbone = draw(st.integers(3, longest))
