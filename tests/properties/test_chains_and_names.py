@@ -6,6 +6,7 @@ import numpy as np
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from rdkit import Chem
+from rdkit.Chem import rdMolDescriptors
 
 from branchpos.chain import Chain
 from branchpos.end_group import ALKANE, END_GROUPS, EndGroup
@@ -66,7 +67,7 @@ def test_line_notation_in_any_order_of_atoms_is_the_same_chain(chain: Chain, see
 @settings(deadline=None)
 @given(chains())
 def test_formula_is_that_of_the_line_notation(chain: Chain) -> None:
-    formula = Chem.rdMolDescriptors.CalcMolFormula(Chem.MolFromSmiles(smiles(chain)))
+    formula = rdMolDescriptors.CalcMolFormula(Chem.MolFromSmiles(smiles(chain)))
     assert parse_formula(formula) == chain.formula
 
 
